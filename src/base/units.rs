@@ -1,0 +1,1 @@
+//! Unit names to SI factors.

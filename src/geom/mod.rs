@@ -1,0 +1,9 @@
+//! Shapes: triangles, boxes, distances, intersections, spatial tree, winding number.
+//!
+//! In: corners [m].  Out: lengths, areas, yes or no.
+//! Not here: what a triangle stands for; charge and permittivity.
+//! Symbols: as in the crate's table.
+
+pub mod triangle;
+
+pub use triangle::Triangle;

@@ -1,0 +1,3 @@
+//! The `amberskin` program: everything is in the library.
+
+fn main() {}

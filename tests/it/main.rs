@@ -1,0 +1,4 @@
+//! All integration tests, one module a subject.
+#![allow(clippy::unwrap_used, reason = "a test fails by panicking")]
+
+mod map;
