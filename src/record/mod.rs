@@ -11,7 +11,7 @@ use std::collections::BTreeMap;
 /// Version of the layout of `record.json`; keys are only added within a number.
 pub const SCHEMA: u32 = 1;
 
-/// A matrix, nested row by row.
+/// A matrix, nested row by row [unit in the name of the key].
 pub type Matrix = Vec<Vec<f64>>;
 
 /// All that a study found.
@@ -136,9 +136,9 @@ pub struct Accuracy {
 pub struct Check {
     /// What.
     pub name: String,
-    /// Measured; in the unit that the name states.
+    /// Measured [unit stated in the name].
     pub value: f64,
-    /// Allowed.
+    /// Allowed [unit stated in the name].
     pub limit: f64,
     /// Whether it holds.
     pub pass: bool,
