@@ -2,3 +2,4 @@
 #![allow(clippy::unwrap_used, reason = "a test fails by panicking")]
 
 mod map;
+mod shapes;
