@@ -6,6 +6,9 @@
 
 pub mod finding;
 pub mod si;
+#[cfg_attr(feature = "parallel", path = "threads_parallel.rs")]
+#[cfg_attr(not(feature = "parallel"), path = "threads_serial.rs")]
+pub mod threads;
 pub mod units;
 
 pub use finding::Finding;

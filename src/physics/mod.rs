@@ -1,1 +1,13 @@
-//! To be filled.
+//! Unit charges to capacitance, error bars, surface field, field at a point and energy.
+//!
+//! In: `Panels` and their unit charge densities.  Out: farads, volts per metre, bars.
+//! Not here: where to refine (`adapt`), algebra on the finished matrix (`circuit`).
+//! Symbols: as in the crate's table; `s = σ/ε` [V/m per V], `u`, `v` weights over the rows.
+//! References: Becker, Rannacher, Acta Numerica 10 (2001) 1; Carstensen, Stephan, Math. Comp. 64
+//! (1995) 483; Feischl et al., Arch. Comput. Methods Eng. 22 (2015) 309.
+
+pub mod capacitance;
+pub mod estimate;
+pub mod faceting;
+pub mod solved;
+pub mod unit;
