@@ -2,3 +2,5 @@
 #![allow(clippy::unwrap_used, reason = "a test fails by panicking")]
 
 mod map;
+mod reference;
+mod shapes;
