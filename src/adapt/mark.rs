@@ -21,6 +21,12 @@ pub(super) const FLOOR: f64 = 0.01;
 /// Share of the sum of indicators that the marked panels carry [1] (DESIGN 3.4).
 const BULK: f64 = 0.6;
 
+/// Least share of panels cut in a round [1].
+///
+/// The bulk alone cuts 12 to 18 % a round.  Measured at 0.3 against it: cube at 6,500 panels 6.8e-6 against
+/// 8.7e-6, square sheet at 3,000 panels 4.8e-5 against 5.0e-5, in less than half the rounds.
+const MIN_GROWTH: f64 = 0.3;
+
 /// Weight of the variation η̃ in the indicator [1] (DESIGN 3.4: without it ridges are never cut, with
 /// weight 1 the cube needs five times the error at 1,300 panels).
 const VARIATION_WEIGHT: f64 = 0.2;
@@ -56,7 +62,8 @@ pub(super) fn cuts(solved: &Solved, room: usize) -> Vec<(usize, usize)> {
     let mut carried = 0.0;
     let mut marked: Vec<usize> = Vec::new();
     for p in order {
-        if BULK * total <= carried || room <= marked.len() {
+        let grown = MIN_GROWTH * indicators.len() as f64 <= marked.len() as f64;
+        if (grown && BULK * total <= carried) || room <= marked.len() {
             break;
         }
         carried += indicators[p];

@@ -4,6 +4,10 @@
 //! Not here: what a triangle stands for; charge and permittivity.
 //! Symbols: as in the crate's table.
 
+pub mod bounds;
+pub mod tree;
 pub mod triangle;
+pub mod winding;
 
+pub use bounds::Bounds;
 pub use triangle::Triangle;

@@ -5,6 +5,7 @@
 //! Symbols: as in the crate's table.
 
 pub mod smooth;
+pub mod assembly;
 
 use crate::base::Finding;
 use crate::base::Vec3;
