@@ -242,6 +242,7 @@ mod tests {
     use super::*;
 
     #[test]
+    #[expect(clippy::float_cmp, reason = "one product of a number and a factor, rounded once")]
     fn quantities_become_si() {
         let read = |text, dimension| parse_quantity(text, dimension).unwrap();
         assert_eq!(read("100 kV", Dimension::Potential), 1e5);
