@@ -156,7 +156,9 @@ mod tests {
         let blank = text(&bodies, Path::new("c.toml"));
         let message = case::parse(&blank, Path::new("c.toml")).unwrap_err().to_string();
         assert!(message.contains("4 problems") && message.contains("size_check"), "{message}");
-        let filled = blank.replace("length = \"\"", "length = \"mm\"").replace("= []  ", "= [1, 1, 1]  ");
+        let filled = blank
+            .replace("length = \"\"", "length = \"mm\"")
+            .replace("size_check = []", "size_check = [1, 1, 1]");
         let case = case::parse(&filled, Path::new("c.toml")).unwrap_or_else(|error| panic!("{error}"));
         let names: Vec<&str> = case.electrodes.iter().map(|e| e.name.as_str()).collect();
         assert_eq!(names, ["a_b_0", "a_b_1", "o_x_y"]);

@@ -197,3 +197,28 @@ pub(super) const KEY: &[(&str, &str)] = &[
          inside the bar, or the field is unbounded. margin = limit / field - 1.",
     ),
 ];
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::case;
+    use std::path::Path;
+
+    #[test]
+    fn the_case_in_the_help_is_a_case() {
+        let start = LONG.find("    [units]").unwrap();
+        let end = LONG.find("Further words").unwrap();
+        let case =
+            case::parse(&LONG[start..end], Path::new("my.toml")).unwrap_or_else(|error| panic!("{error}"));
+        assert_eq!(case.electrodes.len(), 2);
+        assert_eq!(case.looks[0].points.len(), 51);
+    }
+
+    #[test]
+    fn every_help_line_fits_a_terminal() {
+        for text in [SHORT, LONG, CODES, SOLVE, INSPECT, MATRIX, STRESS, NETLIST, PROVE] {
+            let longest = text.lines().map(|line| line.chars().count()).max();
+            assert!(longest <= Some(100), "{longest:?}: {text}");
+        }
+    }
+}

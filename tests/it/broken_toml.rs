@@ -232,3 +232,52 @@ fn files_that_are_no_text_are_refused() {
     let folder = case::load(dir.path()).unwrap_err();
     assert!(folder.is_unread(), "{folder}");
 }
+
+/// Bytes, lines and words cut, doubled and swapped at random places, the same every time.
+#[test]
+fn mutated_cases_are_read_or_refused_and_never_panic() {
+    let mut state = 0x9e37_79b9_7f4a_7c15_u64;
+    let mut below = |n: usize| {
+        // Marsaglia, Xorshift RNGs, J. Stat. Softw. 8 (2003), the triple 13, 7, 17.
+        state ^= state << 13;
+        state ^= state >> 7;
+        state ^= state << 17;
+        (state % n as u64) as usize
+    };
+    const PARTS: [&str; 12] = [
+        "[[",
+        "]]",
+        "\"",
+        "=",
+        "{",
+        "}",
+        "nan",
+        "-1e308",
+        "\u{e9}",
+        "[[look]]\nline = 1\n",
+        "earth",
+        "99999999999999999999",
+    ];
+    let (mut read, mut refused) = (0, 0);
+    for _ in 0..3000 {
+        let mut text: Vec<char> = SOUND.chars().collect();
+        for _ in 0..=below(3) {
+            let at = below(text.len());
+            match below(4) {
+                0 => drop(text.remove(at)),
+                1 => text.swap(at, SOUND.len() / 2),
+                2 => drop(text.splice(at..at, PARTS[below(PARTS.len())].chars())),
+                _ => drop(text.drain(at..(at + below(20)).min(text.len()))),
+            }
+        }
+        let text: String = text.into_iter().collect();
+        match case::parse(&text, Path::new("mutated.toml")) {
+            Ok(_) => read += 1,
+            Err(error) => {
+                refused += 1;
+                assert!(error.to_string().contains("line "), "{error}");
+            }
+        }
+    }
+    assert!(0 < read && read < refused, "{read} read, {refused} refused");
+}

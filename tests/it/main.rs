@@ -3,6 +3,7 @@
 
 mod broken_toml;
 mod case;
+mod cli;
 mod map;
 mod reference;
 mod shapes;
