@@ -4,8 +4,8 @@
 //! Not here: files (`case` reads them), panels (`panel`), charge (`physics`).
 //! Symbols: as in the crate's table.
 
-pub mod smooth;
 pub mod assembly;
+pub mod smooth;
 
 use crate::base::Finding;
 use crate::base::Vec3;

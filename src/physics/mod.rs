@@ -7,7 +7,10 @@
 //! (1995) 483; Feischl et al., Arch. Comput. Methods Eng. 22 (2015) 309.
 
 pub mod capacitance;
+pub mod edges;
 pub mod estimate;
 pub mod faceting;
+pub mod field;
+pub mod look;
 pub mod solved;
 pub mod unit;
