@@ -6,6 +6,26 @@
 
 pub mod assembly;
 pub mod smooth;
+pub mod accept;
+pub mod assembly;
+pub mod edges;
+mod flat;
+pub mod holes;
+mod joints;
+mod listing;
+mod nesting;
+mod orient;
+pub mod place;
+pub mod repair;
+pub mod shells;
+pub mod size;
+pub mod smooth;
+pub mod stl;
+mod stl_ascii;
+pub mod stl_error;
+pub mod weld;
+
+pub use place::place;
 
 use crate::base::Finding;
 use crate::base::Vec3;
