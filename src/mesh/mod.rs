@@ -6,6 +6,12 @@
 
 pub mod smooth;
 pub mod assembly;
+mod contact;
+mod expose;
+mod expose_split;
+mod parts;
+mod plane_cut;
+pub mod selfcross;
 
 use crate::base::Finding;
 use crate::base::Vec3;

@@ -1,6 +1,9 @@
 //! All integration tests, one module a subject.
 #![allow(clippy::unwrap_used, reason = "a test fails by panicking")]
 
+mod assembly;
+mod bodies;
+mod geometry;
 mod map;
 mod reference;
 mod shapes;
