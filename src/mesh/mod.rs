@@ -26,6 +26,12 @@ pub mod stl_error;
 pub mod weld;
 
 pub use place::place;
+mod contact;
+mod expose;
+mod expose_split;
+mod parts;
+mod plane_cut;
+pub mod selfcross;
 
 use crate::base::Finding;
 use crate::base::Vec3;
