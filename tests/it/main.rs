@@ -5,6 +5,8 @@ mod bodies;
 mod assembly;
 mod bodies;
 mod geometry;
+mod broken_toml;
+mod case;
 mod map;
 mod reference;
 mod repair;
