@@ -1,6 +1,6 @@
 //! Welding, repairs and acceptance: each repair undoes a planted defect.
 use crate::bodies;
-use crate::bodies::Facets;
+use crate::stl_bodies::Facets;
 use amberskin::base::Finding;
 use amberskin::base::Severity;
 use amberskin::base::Vec3;
@@ -31,15 +31,15 @@ fn refused(facets: &[[Vec3; 3]], code: &str) -> Finding {
 fn restored(broken: &[[Vec3; 3]], original: &[[Vec3; 3]], code: &str) -> Vec<Finding> {
     let (mended, findings) = accepted(broken);
     let close = |a: f64, b: f64| assert!((a - b).abs() <= 1e-12 * b.abs(), "{a} against {b}");
-    close(bodies::volume(&mended), bodies::volume(original));
-    close(bodies::area(&mended), bodies::area(original));
+    close(stl_bodies::volume(&mended), stl_bodies::volume(original));
+    close(stl_bodies::area(&mended), stl_bodies::area(original));
     assert!(findings.iter().any(|f| f.code == code && f.place.is_some()), "no {code} in {findings:?}");
     findings
 }
 
 #[test]
 fn a_clean_body_passes_without_a_finding() {
-    for body in [bodies::cube(), bodies::ball(Vec3::new(0.1, 0.2, 0.3), 0.05, 3)] {
+    for body in [stl_bodies::cube(), stl_bodies::ball(Vec3::new(0.1, 0.2, 0.3), 0.05, 3)] {
         let (same, findings) = accepted(&body);
         assert_eq!(same, body);
         assert_eq!(findings, []);
@@ -48,7 +48,7 @@ fn a_clean_body_passes_without_a_finding() {
 
 #[test]
 fn welding_shares_corners_and_is_the_same_each_time() {
-    let ball = bodies::ball(Vec3::zeros(), 1.0, 3);
+    let ball = stl_bodies::ball(Vec3::zeros(), 1.0, 3);
     let one = weld::weld(&ball, weld::WELD_REL_TOL);
     // Euler: a closed body without a hole has facets / 2 + 2 corners.
     assert_eq!(one.points.len(), ball.len() / 2 + 2);
@@ -57,8 +57,9 @@ fn welding_shares_corners_and_is_the_same_each_time() {
 
 #[test]
 fn minus_zero_is_zero() {
-    let minus = bodies::cube().iter().map(|f| f.map(|x| x.map(|c| if c < 0.5 { -0.0 } else { c }))).collect();
-    let mixed: Facets = [bodies::cube(), minus].concat();
+    let minus =
+        stl_bodies::cube().iter().map(|f| f.map(|x| x.map(|c| if c < 0.5 { -0.0 } else { c }))).collect();
+    let mixed: Facets = [stl_bodies::cube(), minus].concat();
     let welded = weld::weld(&mixed, 0.0);
     assert_eq!(welded.points.len(), 8);
     assert!(welded.points.iter().all(|x| x.iter().all(|c| c.is_sign_positive())));
@@ -66,7 +67,7 @@ fn minus_zero_is_zero() {
 
 #[test]
 fn shells_come_in_file_order() {
-    let (a, b) = (bodies::cuboid([5.0; 3], [6.0; 3]), bodies::cube());
+    let (a, b) = (stl_bodies::cuboid([5.0; 3], [6.0; 3]), stl_bodies::cube());
     let mixed: Facets = a.iter().zip(&b).flat_map(|(a, b)| [*a, *b]).collect();
     let shells = shells::split(&weld::weld(&mixed, weld::WELD_REL_TOL));
     assert_eq!(shells.iter().map(|s| s.points[0].x).collect::<Vec<_>>(), [5.0, 0.0]);
@@ -75,14 +76,14 @@ fn shells_come_in_file_order() {
 
 #[test]
 fn a_repeated_facet_is_taken_out() {
-    let mut body = bodies::cube();
+    let mut body = stl_bodies::cube();
     body.push(body[4]);
-    restored(&body, &bodies::cube(), "duplicate_removed");
+    restored(&body, &stl_bodies::cube(), "duplicate_removed");
 }
 
 #[test]
 fn a_hole_is_refused_with_its_corners() {
-    let body = &bodies::cube()[1..];
+    let body = &stl_bodies::cube()[1..];
     let finding = refused(body, "hole");
     assert!(finding.text.contains("hole of 3 corners and perimeter 3.41421 m"), "{}", finding.text);
     assert!(finding.text.contains("(1, 1, 0) m"), "{}", finding.text);
@@ -90,5 +91,5 @@ fn a_hole_is_refused_with_its_corners() {
 
 #[test]
 fn an_inside_out_shell_is_turned() {
-    restored(&bodies::inside_out(&bodies::cube()), &bodies::cube(), "shell_turned");
+    restored(&stl_bodies::inside_out(&stl_bodies::cube()), &stl_bodies::cube(), "shell_turned");
 }

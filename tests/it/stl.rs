@@ -1,6 +1,6 @@
 //! Reading good STL files: every solid, every facet, as a second reading has it.
 use crate::bodies;
-use crate::bodies::Facets;
+use crate::stl_bodies::Facets;
 use amberskin::base::Vec3;
 use amberskin::mesh::stl;
 
@@ -32,14 +32,14 @@ fn all(bytes: &[u8]) -> Facets {
 #[test]
 fn both_readings_agree_facet_by_facet() {
     let bodies = [
-        bodies::cube(),
-        bodies::ball(Vec3::new(0.1, -7.3, 1e3), 12.7, 3),
-        bodies::cuboid([-1e-9, 0.0, 1e9], [1e-9, 1.0, 2e9]),
+        stl_bodies::cube(),
+        stl_bodies::ball(Vec3::new(0.1, -7.3, 1e3), 12.7, 3),
+        stl_bodies::cuboid([-1e-9, 0.0, 1e9], [1e-9, 1.0, 2e9]),
     ];
     for body in bodies {
-        let bytes = bodies::binary(&body);
+        let bytes = stl_bodies::binary(&body);
         assert_eq!(all(&bytes), second_binary(&bytes));
-        let text = bodies::ascii("some name", &body);
+        let text = stl_bodies::ascii("some name", &body);
         assert_eq!(all(text.as_bytes()), second_ascii(&text));
         assert_eq!(all(text.as_bytes()), all(&bytes), "both formats hold the same numbers");
     }
