@@ -1,5 +1,5 @@
 //! Welding, repairs and acceptance: each repair undoes a planted defect.
-use crate::bodies;
+use crate::stl_bodies;
 use crate::stl_bodies::Facets;
 use amberskin::base::Finding;
 use amberskin::base::Severity;

@@ -1,5 +1,5 @@
 //! Reading good STL files: every solid, every facet, as a second reading has it.
-use crate::bodies;
+use crate::stl_bodies;
 use crate::stl_bodies::Facets;
 use amberskin::base::Vec3;
 use amberskin::mesh::stl;
