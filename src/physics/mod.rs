@@ -14,3 +14,10 @@ pub mod field;
 pub mod look;
 pub mod solved;
 pub mod unit;
+
+use crate::base::si::EPS0;
+
+/// Permittivity of the surroundings [F/m].
+pub fn permittivity(eps_r: f64) -> f64 {
+    EPS0 * eps_r
+}
