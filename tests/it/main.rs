@@ -2,6 +2,7 @@
 #![allow(clippy::unwrap_used, reason = "a test fails by panicking")]
 
 mod bodies;
+mod broken_stl;
 mod map;
 mod reference;
 mod repair;
