@@ -11,7 +11,7 @@ use std::collections::HashMap;
 ///
 /// A plane filling of that perimeter covers at most 0.02²/4π = 3e-5 of the squared diagonal; a
 /// hole as deep as it is wide shifts the capacitance by less than that share, an order below
-/// the tightest demand.  A missing facet of a ball of 20,000 is filled, one of 2,500 is not.
+/// the tightest demand.  A missing facet of a ball of 60,000 is filled, one of 20,000 is not.
 pub const TINY_PERIMETER_REL: f64 = 0.02;
 
 /// Most sides of a hole that is filled; a tiny hole has few.

@@ -5,12 +5,14 @@ use crate::base::Severity;
 use crate::base::Vec3;
 use crate::geom::Triangle;
 use crate::geom::winding;
+use crate::geom::winding::Winding;
 use crate::mesh::Welded;
 use crate::mesh::edges;
 use crate::mesh::flat;
 use crate::mesh::listing::Listing;
 use crate::mesh::listing::at;
 use crate::mesh::repair;
+use crate::mesh::shells;
 use crate::mesh::weld;
 
 /// Facets of a shell whose centroids vote on whether it lies in another one [1]; odd.  One would
@@ -33,7 +35,7 @@ pub(in crate::mesh) fn orient(shells: &mut [Welded], sheet: bool, name: &str, di
             continue;
         }
         let place = shell.points[0];
-        let volume = volume(shell);
+        let volume = shells::volume(shell);
         if 2.0 * volume.abs() <= flat::FLAT_REL * diagonal * area(shell) {
             if !sheet {
                 empty.add(place, || {
@@ -56,23 +58,12 @@ pub(in crate::mesh) fn orient(shells: &mut [Welded], sheet: bool, name: &str, di
     [empty.finish(), turned.finish(), walls.finish()].concat()
 }
 
-/// Volume inside a closed shell [m³]; negative if its normals point inwards.
-///
-/// By the divergence theorem, from its first corner.
-pub(in crate::mesh) fn volume(shell: &Welded) -> f64 {
-    let x = |p: u32| shell.points[p as usize] - shell.points[0];
-    shell.facets.iter().map(|&[a, b, c]| x(a).dot(&x(b).cross(&x(c)))).sum::<f64>() / 6.0
-}
-
 fn area(shell: &Welded) -> f64 {
-    triangles(shell).iter().map(Triangle::area).sum()
+    shells::triangles(shell).iter().map(Triangle::area).sum()
 }
 
-fn triangles(shell: &Welded) -> Vec<Triangle> {
-    shell.facets.iter().map(|corners| Triangle::new(corners.map(|p| shell.points[p as usize]))).collect()
-}
-
-fn is_closed(shell: &Welded) -> bool {
+/// Whether no side is open.
+pub(in crate::mesh) fn is_closed(shell: &Welded) -> bool {
     edges::open_sides(&edges::sides(&shell.facets)).is_empty()
 }
 
@@ -85,10 +76,16 @@ fn depths(shells: &[Welded], sheet: bool) -> Vec<usize> {
     let mut depths = vec![0; shells.len()];
     for (outer, shell) in shells.iter().enumerate() {
         let inside_box = |x: &Vec3| (0..3).all(|k| boxes[outer].0[k] < x[k] && x[k] < boxes[outer].1[k]);
-        let mut facets: Option<Vec<Triangle>> = None;
+        let mut prepared: Option<Winding> = None;
         for (inner, other) in shells.iter().enumerate().filter(|&(inner, _)| inner != outer) {
             let votes = voters(other).filter(inside_box);
-            let held = votes.filter(|x| holds(facets.get_or_insert_with(|| triangles(shell)), x)).count();
+            let held = votes
+                .filter(|x| {
+                    let prepared = prepared.get_or_insert_with(|| winding::prepare(shells::triangles(shell)));
+                    // Whichever way its normals point.
+                    winding::INSIDE <= prepared.at(x).abs()
+                })
+                .count();
             if VOTES < 2 * held {
                 depths[inner] += 1;
             }
@@ -101,9 +98,4 @@ fn depths(shells: &[Welded], sheet: bool) -> Vec<usize> {
 fn voters(shell: &Welded) -> impl Iterator<Item = Vec3> {
     let n = shell.facets.len();
     (0..VOTES).map(move |k| repair::centroid(&shell.points, &shell.facets[k * n / VOTES]))
-}
-
-/// Whether a closed shell holds a point, whichever way its normals point.
-fn holds(facets: &[Triangle], x: &Vec3) -> bool {
-    winding::INSIDE <= winding::winding_number(facets, x).abs()
 }

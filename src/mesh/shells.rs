@@ -1,5 +1,8 @@
 //! Connected shells of a welded mesh.
 
+use crate::base::Vec3;
+use crate::geom::Triangle;
+use crate::geom::winding;
 use crate::mesh::Welded;
 use crate::mesh::edges;
 use std::collections::HashMap;
@@ -46,6 +49,29 @@ fn compact(welded: &Welded, facets: Vec<[u32; 3]>, place: &mut [Option<u32>]) ->
         place[p as usize] = None;
     }
     Welded { points: used.iter().map(|&p| welded.points[p as usize]).collect(), facets }
+}
+
+/// Index of the innermost shell that holds `x` [m]: of least volume, whichever way it runs.
+///
+/// Open shells count by the solid angle they cover: over half of the sphere is holding.
+pub fn holding(shells: &[Welded], x: &Vec3) -> Option<usize> {
+    let holds = |shell: &Welded| winding::INSIDE <= winding::winding_number(&triangles(shell), x).abs();
+    (0..shells.len())
+        .filter(|&s| holds(&shells[s]))
+        .min_by(|&s, &t| volume(&shells[s]).abs().total_cmp(&volume(&shells[t]).abs()))
+}
+
+/// Volume inside a closed shell [m³]; negative if its normals point inwards.
+///
+/// By the divergence theorem, from its first corner.
+pub fn volume(shell: &Welded) -> f64 {
+    let x = |p: u32| shell.points[p as usize] - shell.points[0];
+    shell.facets.iter().map(|&[a, b, c]| x(a).dot(&x(b).cross(&x(c)))).sum::<f64>() / 6.0
+}
+
+/// The facets of a shell by their corners [m].
+pub fn triangles(shell: &Welded) -> Vec<Triangle> {
+    shell.facets.iter().map(|corners| Triangle::new(corners.map(|p| shell.points[p as usize]))).collect()
 }
 
 /// All shells in one mesh again, in order.

@@ -154,7 +154,7 @@ fn is_utf16(bytes: &[u8]) -> bool {
     [b"\xff\xfe".as_slice(), b"\xfe\xff", b"s\0o\0l\0", b"\0s\0o\0l"].iter().any(|m| text.starts_with(m))
 }
 
-/// Whether the start of a file is text: no control bytes, or the words of STL in it.
+/// Whether the start of a file is text: no control bytes, or the words of STL among them.
 fn is_text(bytes: &[u8]) -> bool {
     let start = &bytes[..bytes.len().min(PROBED)];
     let control = start.iter().any(|&b| b < 0x20 && !b"\t\n\r\x0b\x0c".contains(&b));
@@ -162,7 +162,7 @@ fn is_text(bytes: &[u8]) -> bool {
         let lower = start.to_ascii_lowercase();
         [b"facet".as_slice(), b"vertex"].iter().all(|word| lower.windows(word.len()).any(|w| w == *word))
     };
-    !control && start.is_ascii() || begins_with_solid(bytes) && (!control || words())
+    !control || begins_with_solid(bytes) && words()
 }
 
 fn begins_with_solid(bytes: &[u8]) -> bool {

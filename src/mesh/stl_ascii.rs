@@ -18,7 +18,8 @@ const MAX_LINE: usize = 8192;
 /// # Errors
 /// As [`stl::parse`].
 pub(in crate::mesh) fn parse(bytes: &[u8], file: &str) -> Result<Soup, StlError> {
-    let mut gate = Gate { file, line: 0, state: State::Outside, open: Open::default(), stray: None };
+    let mut gate =
+        Gate { file, line: 0, last: false, state: State::Outside, open: Open::default(), stray: None };
     let mut read = Read { soup: Soup { solids: Vec::new(), findings: Vec::new() }, opposed: 0, empty: 0 };
     let mut rest = without_mark(bytes);
     while !rest.is_empty() {
@@ -99,6 +100,8 @@ struct Gate<'a> {
     file: &'a str,
     /// Number of the current line, from 1.
     line: usize,
+    /// Whether the file ends with this line, without a line end.
+    last: bool,
     state: State,
     open: Open,
     /// Line and text of the first words outside a solid.
@@ -119,6 +122,7 @@ impl Gate<'_> {
             });
         }
         let line = &rest[..end];
+        self.last = end == rest.len();
         let ending = if rest[end..].starts_with(b"\r\n") { 2 } else { 1 };
         *rest = &rest[(end + ending).min(rest.len())..];
         Ok(line)
@@ -163,6 +167,8 @@ impl Gate<'_> {
                 self.open.facets += 1;
                 State::Facet
             }
+            // A word cut in two by the end of the file.
+            state if self.last && tokens.0.is_empty() => return Err(self.line_ends(state.expected())),
             state => return Err(self.unexpected(token, state.expected())),
         };
         Ok(finished)
@@ -244,6 +250,8 @@ impl Gate<'_> {
         let token = tokens.next().ok_or_else(|| self.line_ends(expected))?;
         match std::str::from_utf8(token).ok().and_then(|text| text.parse().ok()) {
             Some(value) => Ok((token, value)),
+            // A number cut in two by the end of the file.
+            None if self.last && tokens.0.is_empty() => Err(self.line_ends(expected)),
             None => Err(self.bad_number(token)),
         }
     }
@@ -270,7 +278,12 @@ impl Gate<'_> {
     }
 
     fn line_ends(&self, expected: &'static str) -> StlError {
-        StlError::LineEnds { file: self.file.to_owned(), line: self.line, expected }
+        let (file, line) = (self.file.to_owned(), self.line);
+        if self.last {
+            StlError::EndsEarly { file, line, expected }
+        } else {
+            StlError::LineEnds { file, line, expected }
+        }
     }
 }
 

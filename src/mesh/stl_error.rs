@@ -65,8 +65,8 @@ pub enum StlError {
     /// A line that ends too early.
     #[error("{file}: line {line}: the line ends where {expected} is wanted")]
     LineEnds { file: String, line: usize, expected: &'static str },
-    /// Text that ends inside a facet.
-    #[error("{file}: line {line}: the file ends inside a facet, where {expected} is wanted")]
+    /// Text that ends inside a facet or a word.
+    #[error("{file}: line {line}: the file ends where {expected} is wanted; a whole file is wanted")]
     EndsEarly { file: String, line: usize, expected: &'static str },
     /// A fourth corner.
     #[error("{file}: line {line}: a facet with more than three corners; triangles are wanted")]

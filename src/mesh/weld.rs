@@ -9,7 +9,9 @@ use std::collections::HashMap;
 /// Distance within which corners are one point, in diagonals of the part [1].
 ///
 /// A corner computed twice and rounded to single precision lies at most one spacing, 1.2e-7 of
-/// the coordinate, apart in each direction: 2e-7 for a part near the origin.
+/// the coordinate, apart in each direction: 2e-7 for a part near the origin.  Measured on three
+/// OpenSCAD bodies of 1,000 to 16,000 facets (bored disc, ball with stub and ring, filleted plate
+/// with letters): corners meant as one lay up to 3e-8 apart, the closest two meant as two 2.4e-5.
 pub const WELD_REL_TOL: f64 = 1e-6;
 
 /// Share of the smallest gap that the spacing of the coordinates may have [1].

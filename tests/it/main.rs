@@ -6,6 +6,7 @@ mod bodies;
 mod broken_toml;
 mod case;
 mod geometry;
+mod broken_stl;
 mod map;
 mod reference;
 mod repair;
