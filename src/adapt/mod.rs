@@ -16,6 +16,7 @@ pub use run::Finished;
 pub use run::Limits;
 pub use run::Round;
 pub use run::Stop;
+pub use run::next;
 pub use run::run;
 pub use split::at_least;
 pub use split::bisect;

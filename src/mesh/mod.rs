@@ -30,6 +30,8 @@ pub mod stl_error;
 pub mod weld;
 
 pub use place::place;
+pub mod assembly;
+pub mod smooth;
 
 use crate::base::Finding;
 use crate::base::Vec3;
