@@ -5,11 +5,11 @@
 part = "plate";
 
 side = 20;        // measuring plate
-slit = 0.5;       // between plate and guard, all around
-rim = 6;          // width of the guard frame
+slit = 1;         // between plate and guard, all around
+rim = 10;         // width of the guard frame
 thickness = 2;    // plate and guard
-gap = 4;          // from plate to driven plate
-drive_side = 36;  // driven plate
+gap = 3;          // from plate to driven plate
+drive_side = 32;  // driven plate
 drive_thickness = 3;
 
 inner = side + 2 * slit;

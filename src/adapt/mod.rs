@@ -10,6 +10,7 @@ mod run;
 mod split;
 
 pub use mark::Demand;
+pub use mark::over_floor;
 pub use mark::reached;
 pub use run::Finished;
 pub use run::Limits;

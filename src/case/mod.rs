@@ -6,7 +6,9 @@
 
 mod fault;
 mod listing;
+
 mod load;
+pub mod machine;
 mod resolve;
 mod resolve_electrode;
 mod resolve_value;

@@ -1,9 +1,16 @@
 //! All integration tests, one module a subject.
 #![allow(clippy::unwrap_used, reason = "a test fails by panicking")]
 
+mod assembly;
+mod bodies;
 mod broken_toml;
 mod case;
+mod broken_stl;
 mod cli;
+mod geometry;
 mod map;
 mod reference;
+mod repair;
 mod shapes;
+mod stl;
+mod stl_bodies;
