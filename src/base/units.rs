@@ -37,6 +37,12 @@ pub enum UnitError {
         /// What was expected.
         dimension: Dimension,
     },
+    /// No unit where its name alone is wanted.
+    #[error("no unit of {dimension} given; write one of {}", names(*.dimension))]
+    NoName {
+        /// What was expected.
+        dimension: Dimension,
+    },
     /// The text does not start with a number.
     #[error(
         "`{text}` does not start with a number; write a {dimension} as a number with a decimal point and a unit, one of {}",

@@ -74,7 +74,7 @@ fn unit_of(
     sink: &mut Sink,
 ) -> Option<(f64, String)> {
     let error = match at.get_ref() {
-        Value::Text(name) if name.trim().is_empty() => units::UnitError::Empty { dimension },
+        Value::Text(name) if name.trim().is_empty() => units::UnitError::NoName { dimension },
         Value::Text(name) => match units::factor(name, dimension) {
             Ok(factor) => return Some((factor, name.clone())),
             Err(error) => error,

@@ -1,5 +1,6 @@
 //! A case to fill in, started from inspected STL files.
 
+use crate::report::digits;
 use crate::study::BodyLine;
 use std::collections::BTreeSet;
 use std::path::Component;
@@ -7,7 +8,7 @@ use std::path::Path;
 use std::path::PathBuf;
 
 /// What stands between the file and the number of a shell in the name of a body.
-const SHELL_MARK: &str = ", shell ";
+const SHELL_MARK: &str = " shell ";
 
 const HEAD: &str = r#"# A case to fill in: it is refused until the blanks are filled.
 # `amberskin --help` explains every word.
@@ -48,7 +49,7 @@ pub(super) fn text(bodies: &[BodyLine], path: &Path) -> String {
     let mut text = HEAD.to_owned();
     for (body, name) in bodies.iter().zip(file_names(&names)) {
         let (file, shell) = split(&body.name);
-        let [x, y, z] = body.size;
+        let [x, y, z] = body.size.map(|side| digits::significant(side, 5));
         let shape = quoted(&relative(Path::new(file), path).to_string_lossy());
         text.push_str(&format!("\n[[electrode]]\nname       = \"{name}\"\nshape      = {shape}\n"));
         if let Some(shell) = shell {
@@ -152,7 +153,7 @@ mod tests {
     #[test]
     fn a_started_case_is_refused_until_it_is_filled_in() {
         let bodies =
-            [body("m/a b.stl, shell 0", true), body("m/a b.stl, shell 1", true), body("o'x\\y.stl", false)];
+            [body("m/a b.stl shell 0", true), body("m/a b.stl shell 1", true), body("o'x\\y.stl", false)];
         let blank = text(&bodies, Path::new("c.toml"));
         let message = case::parse(&blank, Path::new("c.toml")).unwrap_err().to_string();
         assert!(message.contains("4 problems") && message.contains("size_check"), "{message}");

@@ -2,7 +2,6 @@
 
 use crate::base::Severity;
 use crate::case;
-use crate::case::Shapes;
 use crate::cli;
 use crate::cli::args;
 use crate::cli::case_to_fill;
@@ -43,7 +42,7 @@ pub(super) fn run(args: &args::Inspect, show: &Show) -> Result<u8, Failure> {
         paths => {
             let names: Vec<String> = paths.iter().map(|path| path.to_string_lossy().into_owned()).collect();
             let shapes = case::read_shapes(&names, Path::new(""))?;
-            (inspect_files(&shapes)?, None)
+            (study::inspect_files(&shapes), None)
         }
     };
     let unit = unit.as_ref().map(|(name, metres)| (name.as_str(), *metres));
@@ -64,13 +63,6 @@ pub(super) fn run(args: &args::Inspect, show: &Show) -> Result<u8, Failure> {
     Ok(if refused { cli::REFUSED } else { cli::DONE })
 }
 
-/// The inspection of files without a case: lengths in the unit of the drawing.
-///
-/// Bodies are named by their file, with `, shell N` behind it where a file holds several.
-fn inspect_files(_shapes: &Shapes) -> Result<Inspection, Failure> {
-    Err(Failure::NotYet { verb: "inspect STL" })
-}
-
 fn as_text(inspection: &Inspection, unit: Option<show::LengthUnit<'_>>) -> String {
     let mut text = String::new();
     for body in &inspection.bodies {
@@ -82,7 +74,7 @@ fn as_text(inspection: &Inspection, unit: Option<show::LengthUnit<'_>>) -> Strin
     }
     let count = |severity| inspection.findings.iter().filter(|finding| finding.severity == severity).count();
     let counts = [Severity::Refusal, Severity::Warning, Severity::Note].map(count);
-    text.push_str(&format!("{} refusals, {} warnings, {} notes\n", counts[0], counts[1], counts[2]));
+    text.push_str(&format!("refusals: {}, warnings: {}, notes: {}\n", counts[0], counts[1], counts[2]));
     if let Some((panels, bytes)) = inspection.effort {
         let memory = digits::significant(bytes / 1e6, 2);
         text.push_str(&format!("effort for the accuracy asked: about {panels} panels, {memory} MB\n"));
