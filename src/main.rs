@@ -1,3 +1,7 @@
 //! The `amberskin` program: everything is in the library.
 
-fn main() {}
+use std::process::ExitCode;
+
+fn main() -> ExitCode {
+    ExitCode::from(amberskin::cli::run(std::env::args_os()))
+}

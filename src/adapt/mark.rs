@@ -39,6 +39,12 @@ pub(super) fn scale(matrix: &[Vec<f64>], i: usize, j: Option<usize>) -> f64 {
     }
 }
 
+/// Whether mutual entry (i, j) or earth entry i is over the floor, and so under the relative demand.
+pub fn over_floor(matrix: &[Vec<f64>], i: usize, j: Option<usize>) -> bool {
+    let entry = j.map_or_else(|| matrix[i].iter().sum::<f64>(), |j| matrix[i][j]);
+    scale(matrix, i, j) <= entry.abs()
+}
+
 /// Largest bar over its scale, among all entries and row sums [1].
 pub fn reached(matrix: &[Vec<f64>], bars: &(Vec<Vec<Bar>>, Vec<Bar>)) -> f64 {
     let n = matrix.len();

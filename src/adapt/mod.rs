@@ -10,12 +10,13 @@ mod run;
 mod split;
 
 pub use mark::Demand;
+pub use mark::over_floor;
 pub use mark::reached;
 pub use run::Finished;
 pub use run::Limits;
 pub use run::Round;
 pub use run::Stop;
-pub use run::run;
 pub use run::next;
+pub use run::run;
 pub use split::at_least;
 pub use split::bisect;

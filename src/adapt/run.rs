@@ -130,4 +130,6 @@ fn decide(
 }
 
 /// TEMP
-pub fn next(s: &Solved, max: usize) -> Panels { split::bisect(&s.panels, &mark::cuts(s, max - s.panels.len())) }
+pub fn next(s: &Solved, max: usize) -> Panels {
+    split::bisect(&s.panels, &mark::cuts(s, max - s.panels.len()))
+}

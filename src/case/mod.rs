@@ -4,6 +4,27 @@
 //! Not here: any computation, any STL parsing (`mesh`), any output (`report`).
 //! Symbols: as in the crate's table.
 
+mod fault;
+mod listing;
+
+mod load;
+pub mod machine;
+mod resolve;
+mod resolve_electrode;
+mod resolve_value;
+mod resolve_voltage;
+mod wire;
+mod words;
+
+pub use fault::CaseError;
+pub use fault::Fault;
+pub use fault::Problem;
+pub use fault::UnreadShape;
+pub use listing::resolved;
+pub use load::load;
+pub use load::parse;
+pub use load::read_shapes;
+
 use crate::base::Plane;
 use crate::base::Vec3;
 use std::path::PathBuf;
@@ -39,6 +60,8 @@ pub struct Case {
     pub accuracy: Accuracy,
     /// What to write.
     pub deliver: Deliver,
+    /// Paths of the shape files as written, each once, in order of first mention.
+    pub shape_paths: Vec<String>,
     /// Each default that was used, as `key = value` for printing.
     pub defaults: Vec<String>,
 }

@@ -5,6 +5,8 @@
 //! Symbols: as in the crate's table.
 
 pub mod bounds;
+pub mod distance;
+pub mod intersect;
 pub mod tree;
 pub mod triangle;
 pub mod winding;

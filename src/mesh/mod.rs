@@ -4,8 +4,34 @@
 //! Not here: files (`case` reads them), panels (`panel`), charge (`physics`).
 //! Symbols: as in the crate's table.
 
-pub mod smooth;
+pub mod accept;
 pub mod assembly;
+mod contact;
+pub mod edges;
+mod expose;
+mod expose_split;
+mod flat;
+pub mod holes;
+mod joints;
+mod listing;
+mod nesting;
+mod orient;
+mod parts;
+pub mod place;
+mod plane_cut;
+pub mod repair;
+pub mod selfcross;
+pub mod shells;
+pub mod size;
+pub mod smooth;
+pub mod stl;
+mod stl_ascii;
+pub mod stl_error;
+pub mod weld;
+
+pub use place::place;
+pub mod assembly;
+pub mod smooth;
 
 use crate::base::Finding;
 use crate::base::Vec3;

@@ -7,7 +7,17 @@
 //! (1995) 483; Feischl et al., Arch. Comput. Methods Eng. 22 (2015) 309.
 
 pub mod capacitance;
+pub mod edges;
 pub mod estimate;
 pub mod faceting;
+pub mod field;
+pub mod look;
 pub mod solved;
 pub mod unit;
+
+use crate::base::si::EPS0;
+
+/// Permittivity of the surroundings [F/m].
+pub fn permittivity(eps_r: f64) -> f64 {
+    EPS0 * eps_r
+}

@@ -4,6 +4,12 @@
 //! Not here: any computation; the surface file (`report`).
 //! Symbols: as in the crate's table; matrices are nested row by row in the order of `electrodes`.
 
+pub mod cautions;
+pub mod store;
+
+pub use cautions::CAUTIONS;
+pub use store::RecordError;
+
 use serde::Deserialize;
 use serde::Serialize;
 use std::collections::BTreeMap;

@@ -4,11 +4,24 @@
 //! Not here: printing, files (`report`, `cli`), formulas (the rooms below).
 //! Symbols: as in the crate's table.
 
+mod bodies;
+mod checks;
+mod inspect;
+mod prove;
+mod record;
+mod run;
+mod state;
+mod voltage;
+
 use crate::base::Finding;
-use crate::case::Case;
-use crate::case::Shapes;
 use crate::record::Record;
 use crate::record::SurfaceTable;
+
+pub use inspect::inspect_case;
+pub use inspect::inspect_files;
+pub use prove::ProveLine;
+pub use prove::prove;
+pub use run::run;
 
 /// What a running study tells.
 #[derive(Clone, Debug, PartialEq)]
@@ -90,24 +103,4 @@ pub enum StudyError {
     /// The linear system could not be solved.
     #[error("the linear system is singular: {0}")]
     Singular(String),
-}
-
-/// Runs a case to its record.
-///
-/// # Errors
-/// [`StudyError`]; no partial result.
-pub fn run(
-    _case: &Case,
-    _shapes: &Shapes,
-    _progress: &(dyn Fn(&Event) + Sync),
-) -> Result<Outcome, StudyError> {
-    Err(StudyError::Refused(Vec::new()))
-}
-
-/// Inspects the bodies of a case without solving.
-///
-/// # Errors
-/// [`StudyError::Refused`] never: refusals are among the findings.
-pub fn inspect_case(_case: &Case, _shapes: &Shapes) -> Result<Inspection, StudyError> {
-    Err(StudyError::Refused(Vec::new()))
 }

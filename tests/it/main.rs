@@ -1,6 +1,15 @@
 //! All integration tests, one module a subject.
 #![allow(clippy::unwrap_used, reason = "a test fails by panicking")]
 
+mod assembly;
+mod bodies;
+mod broken_toml;
+mod case;
+mod geometry;
+mod broken_stl;
 mod map;
 mod reference;
+mod repair;
 mod shapes;
+mod stl;
+mod stl_bodies;

@@ -1,0 +1,88 @@
+//! Why a verb did not do what was asked, and the exit code for it.
+
+use crate::base::Finding;
+use crate::case::CaseError;
+use crate::cli;
+use crate::record::RecordError;
+use crate::report::ReportError;
+use crate::study::StudyError;
+use std::io;
+use std::path::PathBuf;
+
+/// What stopped a verb.
+#[derive(Debug, thiserror::Error)]
+pub(super) enum Failure {
+    /// The case could not be loaded.
+    #[error(transparent)]
+    Case(#[from] CaseError),
+    /// The study gave no record.
+    #[error(transparent)]
+    Study(#[from] StudyError),
+    /// An output could not be written.
+    #[error(transparent)]
+    Report(#[from] ReportError),
+    /// A record could not be read.
+    #[error(transparent)]
+    Record(#[from] RecordError),
+    /// Standard output could not be written to.
+    #[error("standard output: {0}; redirect it to a place that can be written to")]
+    Output(io::Error),
+    /// Case files and STL files on one command line, or several cases.
+    #[error("give either one case file (.toml) or STL files, not both")]
+    Mixed,
+    /// `--write-case` beside a case.
+    #[error("--write-case starts a case from STL files; this is a case already")]
+    CaseToCase,
+    /// A file is in the way.
+    #[error("{}: a file already stands there; give another name, or --overwrite to replace it", .path.display())]
+    Exists {
+        /// The file.
+        path: PathBuf,
+    },
+    /// The record in the way is one of another study.
+    #[error(
+        "{}: holds {held}; give another [deliver] folder or record, or --overwrite to replace it",
+        .path.display()
+    )]
+    OtherRecord {
+        /// The record.
+        path: PathBuf,
+        /// What stands there.
+        held: &'static str,
+    },
+    /// A verb that this build cannot do.
+    #[error("`{verb}` is not available in this build; the other verbs are")]
+    NotYet {
+        /// The verb.
+        verb: &'static str,
+    },
+}
+
+impl Failure {
+    /// The exit code.
+    pub(super) fn code(&self) -> u8 {
+        match self {
+            Failure::Case(error) if error.is_unread() => cli::FILE,
+            Failure::Study(StudyError::Refused(_)) => cli::REFUSED,
+            Failure::Study(StudyError::Memory { .. }) => cli::ACCURACY,
+            Failure::Study(StudyError::Singular(_)) => cli::CHECK,
+            Failure::Report(ReportError::SameName { .. }) => cli::BAD_REQUEST,
+            Failure::Report(ReportError::Record { .. } | ReportError::Table { .. }) => cli::CHECK,
+            Failure::Report(_) | Failure::Record(_) | Failure::Output(_) => cli::FILE,
+            Failure::Case(_)
+            | Failure::Mixed
+            | Failure::CaseToCase
+            | Failure::Exists { .. }
+            | Failure::OtherRecord { .. }
+            | Failure::NotYet { .. } => cli::BAD_REQUEST,
+        }
+    }
+
+    /// The findings that go with it.
+    pub(super) fn findings(&self) -> &[Finding] {
+        match self {
+            Failure::Study(StudyError::Refused(findings)) => findings,
+            _ => &[],
+        }
+    }
+}

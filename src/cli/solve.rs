@@ -1,0 +1,111 @@
+//! `solve`: one case to its record and files.
+
+use crate::case;
+use crate::case::Case;
+use crate::case::Shapes;
+use crate::cli;
+use crate::cli::args;
+use crate::cli::failure::Failure;
+use crate::cli::progress::Progress;
+use crate::cli::records;
+use crate::cli::show::Show;
+use crate::record::FileHash;
+use crate::record::RecordError;
+use crate::record::store;
+use crate::report;
+use crate::report::Printing;
+use crate::report::Targets;
+use crate::report::answers;
+use crate::report::deliver::sha256;
+use crate::study;
+
+/// Solves the case, prints the answers and writes the files.
+///
+/// # Errors
+/// [`Failure`]; no file is written then, or each one whole.
+pub(super) fn run(args: &args::Solve, show: &Show) -> Result<u8, Failure> {
+    let (case, shapes) = case::load(&args.case)?;
+    if !args.overwrite {
+        check_record(&case, &shapes)?;
+    }
+    say_defaults(&case, show);
+    let progress = Progress::start(show);
+    let outcome = study::run(&case, &shapes, &|event| progress.tell(event));
+    progress.end();
+    let study::Outcome { mut record, surface } = outcome?;
+    let (targets, printing) = (targets(&case), printing(&case));
+    let written = report::deliver(&mut record, &surface, &targets, &printing)?;
+    if show.json {
+        let mut bytes = Vec::new();
+        store::write(&record, &mut bytes)?;
+        show.result(&String::from_utf8_lossy(&bytes))?;
+    } else {
+        show.result(&answers::sheet(&record, &printing))?;
+    }
+    for path in written {
+        show.remark(&format!("written: {}", path.display()));
+    }
+    for reason in &record.verdict.reasons {
+        show.remark(&format!("{}: {reason}", record.verdict.word));
+    }
+    if show.json {
+        records::say_cautions(&record, show);
+    }
+    Ok(records::verdict_code(&record, &[cli::CHECK, cli::LIMIT, cli::ACCURACY]))
+}
+
+fn say_defaults(case: &Case, show: &Show) {
+    if !case.defaults.is_empty() {
+        show.remark(&format!("defaults used: {}", case.defaults.join("; ")));
+    }
+    if case.accuracy.max_field.is_some() {
+        show.remark("`max_field` was read; refinement is not steered by it in this version");
+    }
+}
+
+/// Refuses if the record in the way belongs to another case or other shapes, before any work.
+fn check_record(case: &Case, shapes: &Shapes) -> Result<(), Failure> {
+    let path = &case.deliver.record;
+    if !path.exists() {
+        return Ok(());
+    }
+    let other = |held| Err(Failure::OtherRecord { path: path.clone(), held });
+    let record = match store::read(path) {
+        Ok(record) => record,
+        Err(RecordError::Read { path, source }) => {
+            return Err(Failure::Record(RecordError::Read { path, source }));
+        }
+        Err(_) => return other("something that is no record of this program"),
+    };
+    if record.case.sha256 != sha256(case.text.as_bytes()) {
+        return other("the record of another case (or of this one before it was changed)");
+    }
+    let hashes = |file: &case::ShapeFile| FileHash { path: file.path.clone(), sha256: sha256(&file.bytes) };
+    let now: Vec<FileHash> = shapes.files.iter().map(hashes).collect();
+    if record.shapes != now {
+        return other("a record of this case with other shape files");
+    }
+    Ok(())
+}
+
+/// Units for printing, as the case asks for them.
+pub(super) fn printing(case: &Case) -> Printing {
+    Printing {
+        length_name: case.length_name.clone(),
+        length: case.length_unit,
+        capacitance_name: case.printing.capacitance_name.clone(),
+        capacitance: case.printing.capacitance,
+        field_name: case.printing.field_name.clone(),
+        field: case.printing.field,
+    }
+}
+
+fn targets(case: &Case) -> Targets {
+    Targets {
+        record: case.deliver.record.clone(),
+        surface: case.deliver.surface.clone(),
+        answers: case.deliver.answers.clone(),
+        matrix: case.deliver.matrix.clone(),
+        netlist: case.deliver.netlist.clone(),
+    }
+}

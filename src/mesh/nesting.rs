@@ -1,0 +1,101 @@
+//! Which shells of an electrode are its outside and which are walls of its cavities.
+
+use crate::base::Finding;
+use crate::base::Severity;
+use crate::base::Vec3;
+use crate::geom::Triangle;
+use crate::geom::winding;
+use crate::geom::winding::Winding;
+use crate::mesh::Welded;
+use crate::mesh::edges;
+use crate::mesh::flat;
+use crate::mesh::listing::Listing;
+use crate::mesh::listing::at;
+use crate::mesh::repair;
+use crate::mesh::shells;
+use crate::mesh::weld;
+
+/// Facets of a shell whose centroids vote on whether it lies in another one [1]; odd.  One would
+/// do for shells that do not touch; where they touch, single ones may lie on the other shell.
+const VOTES: usize = 5;
+
+/// Turns each closed shell so that its normals point out of the metal, by nesting parity: a
+/// shell inside an odd number of others bounds a cavity.  Open shells of a sheet stay as they
+/// are.
+///
+/// A refusal where a closed shell of a solid encloses no volume; notes on what was turned and on
+/// what is a cavity wall.
+pub(in crate::mesh) fn orient(shells: &mut [Welded], sheet: bool, name: &str, diagonal: f64) -> Vec<Finding> {
+    let mut empty = Listing::new(name, Severity::Refusal, "no_volume");
+    let mut turned = Listing::new(name, Severity::Note, "shell_turned");
+    let mut walls = Listing::new(name, Severity::Note, "cavity_wall");
+    let depths = depths(shells, sheet);
+    for (s, (shell, depth)) in shells.iter_mut().zip(depths).enumerate() {
+        if sheet && !is_closed(shell) {
+            continue;
+        }
+        let place = shell.points[0];
+        let volume = shells::volume(shell);
+        if 2.0 * volume.abs() <= flat::FLAT_REL * diagonal * area(shell) {
+            if !sheet {
+                empty.add(place, || {
+                    format!("shell {s} at {} encloses no volume; a body with thickness is wanted", at(&place))
+                });
+            }
+            continue;
+        }
+        let is_wall = depth % 2 == 1 && !sheet;
+        if is_wall {
+            walls.add(place, || format!("shell {s} at {} is the wall of a cavity", at(&place)));
+        }
+        if (volume < 0.0) != is_wall {
+            shell.facets.iter_mut().for_each(|corners| corners.swap(1, 2));
+            turned.add(place, || {
+                format!("shell {s} at {} turned: its normals pointed into the metal", at(&place))
+            });
+        }
+    }
+    [empty.finish(), turned.finish(), walls.finish()].concat()
+}
+
+fn area(shell: &Welded) -> f64 {
+    shells::triangles(shell).iter().map(Triangle::area).sum()
+}
+
+/// Whether no side is open.
+pub(in crate::mesh) fn is_closed(shell: &Welded) -> bool {
+    edges::open_sides(&edges::sides(&shell.facets)).is_empty()
+}
+
+/// For each shell, the number of others that hold it.
+fn depths(shells: &[Welded], sheet: bool) -> Vec<usize> {
+    if sheet || shells.len() < 2 {
+        return vec![0; shells.len()];
+    }
+    let boxes: Vec<(Vec3, Vec3)> = shells.iter().map(|s| weld::bounds(&s.points)).collect();
+    let mut depths = vec![0; shells.len()];
+    for (outer, shell) in shells.iter().enumerate() {
+        let inside_box = |x: &Vec3| (0..3).all(|k| boxes[outer].0[k] < x[k] && x[k] < boxes[outer].1[k]);
+        let mut prepared: Option<Winding> = None;
+        for (inner, other) in shells.iter().enumerate().filter(|&(inner, _)| inner != outer) {
+            let votes = voters(other).filter(inside_box);
+            let held = votes
+                .filter(|x| {
+                    let prepared = prepared.get_or_insert_with(|| winding::prepare(shells::triangles(shell)));
+                    // Whichever way its normals point.
+                    winding::INSIDE <= prepared.at(x).abs()
+                })
+                .count();
+            if VOTES < 2 * held {
+                depths[inner] += 1;
+            }
+        }
+    }
+    depths
+}
+
+/// Centroids of facets spread over a shell, [`VOTES`] of them.
+fn voters(shell: &Welded) -> impl Iterator<Item = Vec3> {
+    let n = shell.facets.len();
+    (0..VOTES).map(move |k| repair::centroid(&shell.points, &shell.facets[k * n / VOTES]))
+}

@@ -1,0 +1,88 @@
+//! Potential and field at points in space.
+
+use crate::base::Plane;
+use crate::base::Vec3;
+use crate::base::threads;
+use crate::geom::Triangle;
+use crate::geom::winding;
+use crate::geom::winding::Winding;
+use crate::operator::Sources;
+use crate::panel::Panels;
+use crate::physics::field;
+use crate::physics::solved::Solved;
+use std::f64::consts::PI;
+
+/// Where a point lies.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Medium {
+    /// In the surroundings.
+    Surroundings,
+    /// In the metal of a body.
+    Metal(usize),
+    /// Behind the earth plane.
+    BehindEarth,
+}
+
+/// Potential and field at one point.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Seen {
+    /// Potential [V].
+    pub potential: f64,
+    /// Field [V/m].
+    pub field: Vec3,
+}
+
+/// Tells for any point where it lies.
+pub struct Map {
+    solids: Vec<(usize, Winding)>,
+    plane: Option<Plane>,
+}
+
+impl Map {
+    /// From the drawn surfaces.
+    pub fn new(panels: &Panels) -> Self {
+        let solid = |(k, body): (usize, &crate::mesh::Body)| {
+            let welded = &body.surface.welded;
+            let tri = |f: &[u32; 3]| Triangle::new(f.map(|k| welded.points[k as usize]));
+            (!body.surface.sheet).then(|| (k, winding::prepare(welded.facets.iter().map(tri).collect())))
+        };
+        Map {
+            solids: panels.assembly.bodies.iter().enumerate().filter_map(solid).collect(),
+            plane: panels.plane,
+        }
+    }
+
+    /// Where `x` lies.
+    pub fn medium(&self, x: &Vec3) -> Medium {
+        if self.plane.is_some_and(|plane| plane.height(x) < 0.0) {
+            return Medium::BehindEarth;
+        }
+        let holder = self.solids.iter().find(|(_, winding)| winding.holds(x));
+        holder.map_or(Medium::Surroundings, |(body, _)| Medium::Metal(*body))
+    }
+}
+
+/// Potential and field at `points` with row potentials `v`; in metal its own potential and no field,
+/// behind the earth plane nothing.
+///
+/// Exact to the charges: their error shows within about one panel length of a surface.
+pub fn look(solved: &Solved, sources: &Sources, map: &Map, v: &[f64], points: &[Vec3]) -> Vec<Seen> {
+    let density = field::normal_field(solved, v);
+    let none = Seen { potential: 0.0, field: Vec3::zeros() };
+    threads::map(points.len(), |k| match map.medium(&points[k]) {
+        Medium::BehindEarth => none,
+        Medium::Metal(body) => Seen { potential: body_potential(&solved.panels, body, v), ..none },
+        Medium::Surroundings => {
+            let (mut row, mut scratch) = (vec![0.0; density.len()], sources.scratch());
+            sources.add_potentials(&points[k], 1.0, &mut row, &mut scratch);
+            let potential: f64 = row.iter().zip(&density).map(|(g, s)| g * s).sum();
+            let gradient = sources.gradients(&points[k], &[&density])[0];
+            Seen { potential: potential / (4.0 * PI), field: -gradient / (4.0 * PI) }
+        }
+    })
+}
+
+fn body_potential(panels: &Panels, body: usize, v: &[f64]) -> f64 {
+    let row = panels.assembly.rows.iter().position(|row| row.bodies.contains(&(body as u32)));
+    row.map_or(0.0, |row| v[row])
+}
