@@ -355,7 +355,9 @@ fn bodies_of_every_row_stand_as_the_row_says() {
         if let Wanted::SurfaceField { body, place } = case.wanted {
             let nearest = case.bodies[body].facets.iter().flatten().map(|p| (p - place).norm());
             let nearest = nearest.fold(f64::INFINITY, f64::min);
-            assert!(nearest < 0.1, "{}: place is {nearest} from the nearest corner", row.id);
+            // The middle of a round sheet is far from its corners, all of them on the rim.
+            let reach = if case.bodies[body].sheet { 1.0 + 1e-12 } else { 0.1 };
+            assert!(nearest <= reach, "{}: place is {nearest} from the nearest corner", row.id);
         }
     }
 }
