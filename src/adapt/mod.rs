@@ -16,7 +16,6 @@ pub use run::Finished;
 pub use run::Limits;
 pub use run::Round;
 pub use run::Stop;
-pub use run::next;
 pub use run::run;
 pub use split::at_least;
 pub use split::bisect;

@@ -128,8 +128,3 @@ fn decide(
     let fits = dense::bytes(n + cuts.len(), solved.n_rows()) <= limits.memory;
     (if fits { None } else { Some(Stop::Memory) }, cuts)
 }
-
-/// TEMP
-pub fn next(s: &Solved, max: usize) -> Panels {
-    split::bisect(&s.panels, &mark::cuts(s, max - s.panels.len()))
-}

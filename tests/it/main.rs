@@ -3,9 +3,9 @@
 
 mod assembly;
 mod bodies;
+mod broken_stl;
 mod broken_toml;
 mod case;
-mod broken_stl;
 mod cli;
 mod geometry;
 mod map;

@@ -76,8 +76,8 @@ pub(crate) struct TestCase {
 /// Frequency of the icosphere that stands for a ball: 2,420 facets.
 const BALL: usize = 11;
 
-/// Rings of a round sheet: 2,400 facets, 120 sides.
-const DISC: usize = 20;
+/// Halvings of a round sheet: 192 sides, 190 facets, 1.8e-4 less area than the disc.
+const DISC: u32 = 6;
 
 /// All rows of the table.
 pub(crate) fn rows() -> Vec<Row> {
@@ -163,7 +163,7 @@ fn bodies(row: &Row) -> (Vec<TestBody>, Option<Plane>) {
         shapes::moved(&shapes::scaled(&odd, radius), [0.0, 0.0, z])
     };
     let disc = |radius: f64, z: f64| {
-        shapes::moved(&shapes::scaled(&shapes::disc_sheet(DISC), radius), [0.0, 0.0, z])
+        shapes::moved(&shapes::scaled(&shapes::polygon_sheet(DISC), radius), [0.0, 0.0, z])
     };
     let square = |side: f64, at: [f64; 3]| shapes::moved(&shapes::rect_sheet(side, side, 1, 1), at);
     let len = |key: &str| row.length(key);
@@ -355,7 +355,9 @@ fn bodies_of_every_row_stand_as_the_row_says() {
         if let Wanted::SurfaceField { body, place } = case.wanted {
             let nearest = case.bodies[body].facets.iter().flatten().map(|p| (p - place).norm());
             let nearest = nearest.fold(f64::INFINITY, f64::min);
-            assert!(nearest < 0.1, "{}: place is {nearest} from the nearest corner", row.id);
+            // The middle of a round sheet is far from its corners, all of them on the rim.
+            let reach = if case.bodies[body].sheet { 1.0 + 1e-12 } else { 0.1 };
+            assert!(nearest <= reach, "{}: place is {nearest} from the nearest corner", row.id);
         }
     }
 }

@@ -126,6 +126,23 @@ pub(crate) fn disc_sheet(rings: usize) -> Vec<Facet> {
     facets
 }
 
+/// A round sheet of radius 1 in z = 0, normals up, as drawing programs leave flat faces: a polygon of
+/// 3 · 2^halvings sides whose ears are cut off until a triangle is left, sides − 2 facets.
+pub(crate) fn polygon_sheet(halvings: u32) -> Vec<Facet> {
+    let sides = 3 * 2_usize.pow(halvings);
+    let at = |k: usize| {
+        let angle = 2.0 * PI * (k % sides) as f64 / sides as f64;
+        Vec3::new(angle.cos(), angle.sin(), 0.0)
+    };
+    let mut facets = vec![[0, sides / 3, 2 * sides / 3].map(at)];
+    let mut step = sides / 3;
+    while 1 < step {
+        facets.extend((0..sides).step_by(step).map(|k| [k, k + step / 2, k + step].map(at)));
+        step /= 2;
+    }
+    facets
+}
+
 /// A flat ring in z = 0 between two radii, normals up: 2 · rings · columns facets.
 pub(crate) fn annulus_sheet(inner: f64, outer: f64, rings: usize, columns: usize) -> Vec<Facet> {
     let profile: Vec<[f64; 2]> =
@@ -447,6 +464,7 @@ fn sheets_have_their_area_and_face_up() {
     let sheets = [
         ("rectangle", rect_sheet(2.0, 3.0, 1, 1), 2, 6.0, 1e-14),
         ("disc", disc_sheet(20), 2400, PI, 5e-4),
+        ("polygon", polygon_sheet(6), 190, PI, 2e-4),
         ("ring", annulus_sheet(1.0, 2.0, 6, 90), 1080, 3.0 * PI, 1e-3),
     ];
     for (name, facets, n, exact_area, rel_tol) in sheets {
