@@ -7,6 +7,7 @@ use crate::case::Role;
 use crate::case::Shell;
 use crate::case::SurfaceKind;
 use crate::case::ValueIs;
+use crate::mesh::smooth;
 
 /// Every word of the case with its value as it was understood, in SI with the unit behind it.
 ///
@@ -73,9 +74,8 @@ fn put_electrode(case: &Case, electrode: &Electrode, put: &mut impl FnMut(String
     };
     say("role", role);
     say("sheet", electrode.sheet.to_string());
-    if let Some(angle) = electrode.crease_angle {
-        say("crease_angle", format!("{angle} rad"));
-    }
+    let angle = electrode.crease_angle.unwrap_or(smooth::CREASE_ANGLE);
+    say("crease_angle", format!("{angle} rad"));
     let surface = match electrode.surface {
         SurfaceKind::Rebuilt => "rebuilt",
         SurfaceKind::AsDrawn => "as_drawn",

@@ -149,19 +149,16 @@ fn relative_permittivity(wire: Option<&wire::Surroundings>, sink: &mut Sink) -> 
 }
 
 fn accuracy(wire: Option<&wire::Accuracy>, sink: &mut Sink) -> Accuracy {
-    let Some(wire) = wire else {
-        sink.assume("accuracy.capacitance", "0.5 %");
-        return Accuracy {
-            capacitance: CAPACITANCE_BAR,
-            max_field: None,
-            max_panels: None,
-            time_limit: None,
-            memory_limit: None,
-            threads: None,
-        };
-    };
-    if wire.capacitance.is_none() {
-        sink.assume("accuracy.capacitance", "0.5 %");
+    let nothing = wire::Accuracy::default();
+    let wire = wire.unwrap_or(&nothing);
+    for (field, word, default) in [
+        (&wire.capacitance, "capacitance", "0.5 %"),
+        (&wire.memory_limit, "memory_limit", "70 % of what is free"),
+        (&wire.threads, "threads", "all cores"),
+    ] {
+        if field.is_none() {
+            sink.assume(&format!("accuracy.{word}"), default);
+        }
     }
     let panels = "a whole number of panels, 1 or more";
     let threads = "a whole number of threads, from 1 to 1024";

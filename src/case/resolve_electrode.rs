@@ -17,6 +17,7 @@ use crate::case::resolve_value as value;
 use crate::case::wire;
 use crate::case::wire::Value;
 use crate::case::words::nearest;
+use crate::mesh::smooth;
 use std::f64::consts::PI;
 use std::f64::consts::SQRT_2;
 use toml::Spanned;
@@ -80,7 +81,7 @@ fn electrode(
             sink.assume(&format!("{key}.sheet"), "false");
             false
         }),
-        crease_angle: crease_angle(&wire.crease_angle, sink),
+        crease_angle: crease_angle(&wire.crease_angle, &key, sink),
         surface: surface(&wire.surface, &key, sink),
         field_limit: field_limit(&wire.field_limit, sink),
         size_check: size_check(&wire.size_check, unit, sink),
@@ -185,7 +186,11 @@ fn surface(field: &wire::Field, key: &str, sink: &mut Sink) -> SurfaceKind {
     value::choice(field, "surface", &kinds, sink).unwrap_or(SurfaceKind::Rebuilt)
 }
 
-fn crease_angle(field: &wire::Field, sink: &mut Sink) -> Option<f64> {
+fn crease_angle(field: &wire::Field, key: &str, sink: &mut Sink) -> Option<f64> {
+    if field.is_none() {
+        let degrees = format!("{:.1} deg", smooth::CREASE_ANGLE.to_degrees());
+        sink.assume(&format!("{key}.crease_angle"), &degrees);
+    }
     let angle = value::quantity(field, "crease_angle", Dimension::Angle, sink)?;
     if 0.0 < angle && angle < PI {
         return Some(angle);

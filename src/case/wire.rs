@@ -169,7 +169,7 @@ pub(super) struct Sheet {
     pub(super) points: Field,
 }
 
-#[derive(Debug, Deserialize)]
+#[derive(Debug, Default, Deserialize)]
 #[serde(deny_unknown_fields)]
 pub(super) struct Accuracy {
     pub(super) capacitance: Field,

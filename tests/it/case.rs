@@ -131,7 +131,9 @@ fn defaults_are_used_and_listed() {
     assert!(case.voltage_cases.is_empty());
     for line in [
         "accuracy.capacitance = 0.5 %",
+        "accuracy.threads = all cores",
         "electrode.a.surface = rebuilt",
+        "electrode.a.crease_angle = 35.0 deg",
         "units.field = kV/mm",
         "surroundings.relative_permittivity = 1",
         "deliver.folder = out/some",
