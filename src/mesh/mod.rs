@@ -30,8 +30,6 @@ pub mod stl_error;
 pub mod weld;
 
 pub use place::place;
-pub mod assembly;
-pub mod smooth;
 
 use crate::base::Finding;
 use crate::base::Vec3;

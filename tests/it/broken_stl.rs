@@ -1,6 +1,6 @@
 //! Broken and awkward STL files: none panics or takes long, each says what is wrong and where.
-use crate::bodies;
-use crate::bodies::Facets;
+use crate::stl_bodies;
+use crate::stl_bodies::Facets;
 use amberskin::base::Vec3;
 use amberskin::mesh::accept;
 use amberskin::mesh::edges;
@@ -49,7 +49,7 @@ fn check(cases: Vec<(&str, Vec<u8>, Expected)>) {
 }
 
 fn cube() -> Vec<u8> {
-    bodies::binary(&bodies::cube())
+    stl_bodies::binary(&stl_bodies::cube())
 }
 
 /// The binary cube with bytes from `at` on replaced.
@@ -60,7 +60,7 @@ fn cube_with(at: usize, bytes: &[u8]) -> Vec<u8> {
 }
 
 fn text() -> String {
-    bodies::ascii("part", &bodies::cube())
+    stl_bodies::ascii("part", &stl_bodies::cube())
 }
 
 /// The ASCII cube with the first `from` replaced.
@@ -95,7 +95,7 @@ fn binary_files_are_held_against_their_length() {
 
 #[test]
 fn headers_do_not_decide() {
-    let mut tens = bodies::binary(&bodies::cuboid([0.0; 3], [10.0; 3]));
+    let mut tens = stl_bodies::binary(&stl_bodies::cuboid([0.0; 3], [10.0; 3]));
     tens[..10].copy_from_slice(b"solid part");
     assert!(tens.iter().all(|&b| b < 0x80), "the case that a look at the bytes alone gets wrong");
     let long = b"solid facet normal outer loop vertex";
@@ -165,7 +165,7 @@ fn other_kinds_of_files_are_named() {
 #[test]
 fn awkward_text_is_read() {
     let t = text();
-    let two = format!("{t}{}", bodies::ascii("other", &bodies::ball(Vec3::zeros(), 1.0, 0)));
+    let two = format!("{t}{}", stl_bodies::ascii("other", &stl_bodies::ball(Vec3::zeros(), 1.0, 0)));
     let no_end = t.replace("endsolid part\n", "");
     let latin = [b"solid Stra\xdfe", &text().as_bytes()[10..]].concat();
     check(vec![
@@ -345,7 +345,7 @@ fn inspect(facets: &[[Vec3; 3]], sheet: bool) -> bool {
         }
         let points = &surface.welded.points;
         let facets: Facets = surface.welded.facets.iter().map(|f| f.map(|p| points[p as usize])).collect();
-        assert!(0.0 < bodies::volume(&facets), "normals point outward");
+        assert!(0.0 < stl_bodies::volume(&facets), "normals point outward");
     }
     true
 }
@@ -396,9 +396,9 @@ fn ten_thousand_mutations_neither_panic_nor_take_long_nor_much_memory() {
         assert!(output.status.success() && said.contains("1 passed"), "{said}");
         return;
     }
-    let ball = bodies::ball(Vec3::new(0.3, 0.0, 0.0), 1.0, 1);
-    let body: Facets = [bodies::cube(), ball.clone()].concat();
-    let (binary, text) = (bodies::binary(&body), bodies::ascii("part", &body).into_bytes());
+    let ball = stl_bodies::ball(Vec3::new(0.3, 0.0, 0.0), 1.0, 1);
+    let body: Facets = [stl_bodies::cube(), ball.clone()].concat();
+    let (binary, text) = (stl_bodies::binary(&body), stl_bodies::ascii("part", &body).into_bytes());
     let mut random = Random(0x9e37_79b9_7f4a_7c15);
     let mut tally = [0; 4];
     for round in 0..10_000 {

@@ -3,10 +3,10 @@
 
 mod assembly;
 mod bodies;
+mod broken_stl;
 mod broken_toml;
 mod case;
 mod geometry;
-mod broken_stl;
 mod map;
 mod reference;
 mod repair;

@@ -80,7 +80,7 @@ fn shells_come_in_file_order() {
 
 #[test]
 fn the_innermost_shell_that_holds_a_point_is_found() {
-    let nested = [0.5, 2.0, 1.0].map(|r| bodies::ball(Vec3::zeros(), r, 1)).concat();
+    let nested = [0.5, 2.0, 1.0].map(|r| stl_bodies::ball(Vec3::zeros(), r, 1)).concat();
     let shells = shells::split(&weld::weld(&nested, weld::WELD_REL_TOL));
     let at = |x: f64| shells::holding(&shells, &Vec3::new(x, 0.0, 0.0));
     assert_eq!([0.1, 0.7, 1.5, 2.5].map(at), [Some(0), Some(2), Some(1), None]);
@@ -110,7 +110,7 @@ fn an_inside_out_shell_is_turned() {
 fn a_facet_without_area_is_taken_out_and_its_neighbours_are_joined() {
     // Two facets of the top of the cube with a needle between them whose middle corner lies on the
     // diagonal: on one side the diagonal is whole, on the other it is in two.
-    let body = bodies::cube();
+    let body = stl_bodies::cube();
     let [a, b, c] = body[1];
     let middle = (a + b) * 0.5;
     let mut broken: Facets = body.clone();
@@ -123,15 +123,15 @@ fn a_facet_without_area_is_taken_out_and_its_neighbours_are_joined() {
 
 #[test]
 fn a_facet_with_equal_corners_is_taken_out() {
-    let mut body = bodies::cube();
+    let mut body = stl_bodies::cube();
     let [a, b, _] = body[3];
     body.push([a, b, b]);
-    restored(&body, &bodies::cube(), "zero_area_removed");
+    restored(&body, &stl_bodies::cube(), "zero_area_removed");
 }
 
 #[test]
 fn t_joints_are_closed() {
-    let body = bodies::ball(Vec3::zeros(), 1.0, 2);
+    let body = stl_bodies::ball(Vec3::zeros(), 1.0, 2);
     let [a, b, c] = body[17];
     let mut broken = body.clone();
     // Thirds of one side: two T-joints on one open side of the neighbour.
@@ -143,7 +143,7 @@ fn t_joints_are_closed() {
 
 #[test]
 fn t_joints_on_all_three_sides_of_a_facet_are_closed() {
-    let body = bodies::ball(Vec3::zeros(), 1.0, 1);
+    let body = stl_bodies::ball(Vec3::zeros(), 1.0, 1);
     let [a, b, c] = body[3];
     let (ab, bc, ca) = ((a + b) * 0.5, (b + c) * 0.5, (c + a) * 0.5);
     let mut broken = body.clone();
@@ -151,7 +151,7 @@ fn t_joints_on_all_three_sides_of_a_facet_are_closed() {
     let findings = restored(&broken, &body, "t_joint_closed");
     assert_eq!(findings.len(), 3, "{findings:?}");
     // And the other way round: the facet between three that are halved.
-    let body = bodies::ball(Vec3::zeros(), 1.0, 2);
+    let body = stl_bodies::ball(Vec3::zeros(), 1.0, 2);
     let halved = |f: &[Vec3; 3]| -> Option<Facets> {
         let k = (0..3)
             .find(|&k| body[3].contains(&f[k]) && body[3].contains(&f[(k + 1) % 3]) && *f != body[3])?;
@@ -174,7 +174,7 @@ fn pierced(body: &[[Vec3; 3]], f: usize) -> Facets {
 
 #[test]
 fn a_tiny_hole_is_filled() {
-    let body = bodies::ball(Vec3::new(1.0, 2.0, 3.0), 1.0, 3);
+    let body = stl_bodies::ball(Vec3::new(1.0, 2.0, 3.0), 1.0, 3);
     let findings = restored(&pierced(&body, 123), &body, "tiny_hole_filled");
     assert!(findings[0].text.contains("tiny hole of 3 sides"), "{findings:?}");
 }
@@ -213,7 +213,7 @@ fn a_tiny_hole_of_many_sides_is_filled() {
 
 #[test]
 fn flipped_facets_of_a_closed_shell_are_turned() {
-    let body = bodies::ball(Vec3::zeros(), 1.0, 2);
+    let body = stl_bodies::ball(Vec3::zeros(), 1.0, 2);
     let mut broken = body.clone();
     for f in [3, 4, 77] {
         broken[f].swap(0, 1);
@@ -224,7 +224,7 @@ fn flipped_facets_of_a_closed_shell_are_turned() {
 
 #[test]
 fn long_lists_end_with_the_number_of_the_rest() {
-    let body = bodies::ball(Vec3::zeros(), 1.0, 3);
+    let body = stl_bodies::ball(Vec3::zeros(), 1.0, 3);
     let broken: Facets = [body.clone(), body[..70].to_vec()].concat();
     let findings = restored(&broken, &body, "duplicate_removed");
     assert_eq!(findings.len(), 51);
@@ -233,7 +233,7 @@ fn long_lists_end_with_the_number_of_the_rest() {
 
 #[test]
 fn all_defects_at_once_are_mended() {
-    let body = bodies::ball(Vec3::zeros(), 1.0, 3);
+    let body = stl_bodies::ball(Vec3::zeros(), 1.0, 3);
     let mut broken = pierced(&body, 300);
     let [a, b, c] = broken[40];
     broken[7].swap(0, 1);
@@ -241,7 +241,7 @@ fn all_defects_at_once_are_mended() {
     let m = (a + b) * 0.5;
     broken.splice(40..41, [[a, m, c], [m, b, c]]);
     broken.push([a, a, b]);
-    let findings = restored(&bodies::inside_out(&broken), &body, "shell_turned");
+    let findings = restored(&stl_bodies::inside_out(&broken), &body, "shell_turned");
     for code in
         ["zero_area_removed", "duplicate_removed", "t_joint_closed", "facet_flipped", "tiny_hole_filled"]
     {
@@ -251,14 +251,14 @@ fn all_defects_at_once_are_mended() {
 
 #[test]
 fn a_shell_inside_another_is_a_cavity_wall_however_it_was_drawn() {
-    let outer = bodies::ball(Vec3::zeros(), 1.0, 2);
-    let inner = bodies::ball(Vec3::new(0.1, 0.0, 0.0), 0.5, 2);
-    let core = bodies::ball(Vec3::new(0.1, 0.0, 0.0), 0.2, 2);
-    let expected = bodies::volume(&outer) - bodies::volume(&inner) + bodies::volume(&core);
-    for walls in [inner.clone(), bodies::inside_out(&inner)] {
-        for core in [core.clone(), bodies::inside_out(&core)] {
+    let outer = stl_bodies::ball(Vec3::zeros(), 1.0, 2);
+    let inner = stl_bodies::ball(Vec3::new(0.1, 0.0, 0.0), 0.5, 2);
+    let core = stl_bodies::ball(Vec3::new(0.1, 0.0, 0.0), 0.2, 2);
+    let expected = stl_bodies::volume(&outer) - stl_bodies::volume(&inner) + stl_bodies::volume(&core);
+    for walls in [inner.clone(), stl_bodies::inside_out(&inner)] {
+        for core in [core.clone(), stl_bodies::inside_out(&core)] {
             let (mended, findings) = accepted(&[core, walls.clone(), outer.clone()].concat());
-            assert!((bodies::volume(&mended) / expected - 1.0).abs() < 1e-12);
+            assert!((stl_bodies::volume(&mended) / expected - 1.0).abs() < 1e-12);
             assert!(findings.iter().any(|f| f.code == "cavity_wall" && f.text.contains("shell 1")));
         }
     }
@@ -266,7 +266,7 @@ fn a_shell_inside_another_is_a_cavity_wall_however_it_was_drawn() {
 
 #[test]
 fn walls_without_thickness_are_refused() {
-    let mut fin = bodies::cube();
+    let mut fin = stl_bodies::cube();
     let [a, b] = [Vec3::new(0.0, 0.0, 1.0), Vec3::new(1.0, 0.0, 1.0)];
     let tip = Vec3::new(0.5, 0.0, 2.0);
     fin.extend([[a, b, tip], [b, a, tip]]);
@@ -276,7 +276,7 @@ fn walls_without_thickness_are_refused() {
 
 #[test]
 fn edges_of_more_than_two_facets_are_refused_on_a_solid_and_noted_on_a_sheet() {
-    let pair = [bodies::cube(), bodies::cuboid([1.0, 1.0, 0.0], [2.0, 2.0, 1.0])].concat();
+    let pair = [stl_bodies::cube(), stl_bodies::cuboid([1.0, 1.0, 0.0], [2.0, 2.0, 1.0])].concat();
     let finding = refused(&pair, "non_manifold_edge");
     assert!(
         finding.text.contains("4 facets meet at the edge from (1, 1, 0) m to (1, 1, 1) m"),
@@ -320,7 +320,7 @@ fn a_surface_with_one_side_is_named() {
 
 #[test]
 fn a_sheet_may_be_open_and_keeps_its_rim() {
-    let square = &bodies::cube()[..2];
+    let square = &stl_bodies::cube()[..2];
     let (surface, findings) = accept::body(square, true, "plate").unwrap();
     assert_eq!((facets_of(&surface), surface.sheet, findings), (square.to_vec(), true, vec![]));
     let mut mixed = square.to_vec();
@@ -328,7 +328,7 @@ fn a_sheet_may_be_open_and_keeps_its_rim() {
     let (surface, _) = accept::body(&mixed, true, "plate").unwrap();
     let [n, m] = [0, 1].map(|f| surface.normals[f][0]);
     assert!((n - m).norm() < 1e-15, "both facets face one way");
-    let twice: Facets = [square, &bodies::inside_out(square)].concat();
+    let twice: Facets = [square, &stl_bodies::inside_out(square)].concat();
     let (surface, findings) = accept::body(&twice, true, "plate").unwrap();
     assert_eq!(surface.welded.facets.len(), 2);
     assert!(findings[0].text.contains("reversed copy"), "{findings:?}");
@@ -337,7 +337,7 @@ fn a_sheet_may_be_open_and_keeps_its_rim() {
 #[test]
 fn slivers_are_warned_of() {
     let tip = Vec3::new(0.5, -2e-4, 0.5);
-    let mut body = bodies::cube();
+    let mut body = stl_bodies::cube();
     let [a, b, c] = body[4];
     body.splice(4..5, [[a, b, tip], [b, c, tip], [c, a, tip]]);
     let (_, findings) = accepted(&body);
@@ -387,13 +387,13 @@ fn placing_scales_then_turns_then_shifts() {
         assert!((is - wanted).norm() < 1e-15, "{is} against {wanted}");
     }
     let mirrored = Placing { unit: 1.0, scale: -1.0, rotations: &[], shift: Vec3::zeros() };
-    assert!((bodies::volume(&place(&bodies::cube(), &mirrored)) - 1.0).abs() < 1e-15);
+    assert!((stl_bodies::volume(&place(&stl_bodies::cube(), &mirrored)) - 1.0).abs() < 1e-15);
 }
 
 #[test]
 fn lengths_times_a_power_of_two_change_nothing_else() {
     let s = 1.0 / 1024.0;
-    let mut body = bodies::ball(Vec3::new(1.0, 0.0, 0.0), 1.0, 2);
+    let mut body = stl_bodies::ball(Vec3::new(1.0, 0.0, 0.0), 1.0, 2);
     body[9].swap(0, 1);
     body.push(body[3]);
     let small: Facets = body.iter().map(|f| f.map(|x| x * s)).collect();
@@ -403,7 +403,7 @@ fn lengths_times_a_power_of_two_change_nothing_else() {
 
 #[test]
 fn closed_solids_that_touch_stay_apart_and_faces_of_one_body_are_joined() {
-    let (left, right) = (bodies::cube(), bodies::cuboid([1.0, 0.0, 0.0], [2.0, 1.0, 1.0]));
+    let (left, right) = (stl_bodies::cube(), stl_bodies::cuboid([1.0, 0.0, 0.0], [2.0, 1.0, 1.0]));
     let (surface, findings) = accept::body_of(&[&left, &right], false, "part").unwrap();
     assert_eq!((surface.welded.facets.len(), surface.welded.points.len(), findings), (24, 16, vec![]));
     let faces: Vec<&[[Vec3; 3]]> = left.chunks(2).collect();
