@@ -5,7 +5,7 @@ use nalgebra::DMatrix;
 use nalgebra::Dyn;
 use nalgebra::LU;
 
-/// A matrix, nested row by row.
+/// A matrix, nested row by row [unit stated where it is used].
 pub type Matrix = Vec<Vec<f64>>;
 
 /// Smallest over largest pivot, after scaling to a unit diagonal, below which a matrix counts as
@@ -104,6 +104,10 @@ impl Solver {
 
     /// `m⁻¹ b`.
     pub(super) fn solve(&self, b: &DMatrix<f64>) -> DMatrix<f64> {
+        // The triangular solves of nalgebra do not take an empty matrix.
+        if b.nrows() == 0 {
+            return b.clone();
+        }
         let scaled =
             |b: &DMatrix<f64>| DMatrix::from_fn(b.nrows(), b.ncols(), |i, j| self.scale[i] * b[(i, j)]);
         let x = self.lu.solve(&scaled(b));
