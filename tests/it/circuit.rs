@@ -68,9 +68,9 @@ fn mutual_and_earth_put_the_matrix_together_again() {
         assert_close(m[i].iter().sum::<f64>() + e[i], c[i][i], 1e-15);
     }
     let p = inverse(&c).unwrap();
-    for i in 0..3 {
-        for j in 0..3 {
-            let one: f64 = (0..3).map(|k| p[i][k] * c[k][j]).sum();
+    for (i, p) in p.iter().enumerate() {
+        let product: Vec<f64> = (0..3).map(|j| p.iter().zip(&c).map(|(p, c)| p * c[j]).sum()).collect();
+        for (j, one) in product.iter().enumerate() {
             assert!((one - f64::from(u8::from(i == j))).abs() < 1e-14, "p c at {i}, {j}: {one}");
         }
     }
