@@ -18,7 +18,7 @@ const LOOK_POINTS: usize = 11;
 pub fn sheet(record: &Record, printing: &Printing) -> String {
     let mut text = tables::head_text(record);
     for form in Form::ALL {
-        text += &tables::matrix_table(record, form, printing);
+        text += &tables::matrix_text(record, form, printing);
         text.push('\n');
     }
     for case in &record.voltage_cases {

@@ -32,13 +32,10 @@ const EDGES: usize = 12;
 /// Widest table before it goes on below [1].
 const WIDTH: usize = 110;
 
-/// One form of the matrix with title, cautions and verdict: what `matrix` prints.
-pub fn matrix_text(record: &Record, form: Form, printing: &Printing) -> String {
-    head_text(record) + &matrix_table(record, form, printing)
-}
-
 /// One form of the matrix as a table, each entry with its bar and cut to it.
-pub(crate) fn matrix_table(record: &Record, form: Form, printing: &Printing) -> String {
+///
+/// Whoever prints it alone puts [`head_text`] above it.
+pub fn matrix_text(record: &Record, form: Form, printing: &Printing) -> String {
     let (unit, factor) = match form {
         Form::PotentialCoefficients => {
             (format!("1/{}", printing.capacitance_name), 1.0 / printing.capacitance)
@@ -72,10 +69,11 @@ pub(crate) fn matrix_table(record: &Record, form: Form, printing: &Printing) -> 
     text + &grid(&names, &columns)
 }
 
-/// The highest surface field of every electrode in every voltage case, with limits and margins, under
-/// title, cautions and verdict: what `stress` prints.
+/// The highest surface field of every electrode in every voltage case, with limits and margins.
+///
+/// Whoever prints it alone puts [`head_text`] above it.
 pub fn stress_text(record: &Record, printing: &Printing) -> String {
-    let mut text = head_text(record);
+    let mut text = String::new();
     for case in &record.voltage_cases {
         text += &case_heading(case);
         for name in &case.floating {
@@ -91,7 +89,7 @@ pub fn stress_text(record: &Record, printing: &Printing) -> String {
 }
 
 /// Title, cautions, verdict and accuracy: what stands over everything printed from a record.
-pub(crate) fn head_text(record: &Record) -> String {
+pub fn head_text(record: &Record) -> String {
     let mut text = format!("{}\n", title(record));
     for (key, label) in TRAIL {
         if let Some(value) = record.case.resolved.get(key).filter(|value| !value.is_empty()) {

@@ -202,6 +202,18 @@ fn the_answer_sheet_reads_as_agreed() {
 }
 
 #[test]
+fn the_units_of_the_case_are_kept_with_the_record() {
+    let mut record = fixtures::record();
+    for (key, name) in [("length", "in"), ("capacitance", "fF"), ("field", "kV/cm")] {
+        record.case.resolved.insert(format!("units.{key}"), name.into());
+    }
+    let found = printing::of_record(&record);
+    assert_eq!((found.length, found.capacitance, found.field), (0.0254, 1e-15, 1e5), "{found:?}");
+    record.case.resolved.clear();
+    assert_eq!(printing::of_record(&record), Printing::default(), "where it names none");
+}
+
+#[test]
 fn cautions_stand_where_they_belong() {
     let record = fixtures::record();
     let sheet = answers::sheet(&record, &Printing::default());
