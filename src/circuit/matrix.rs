@@ -96,8 +96,9 @@ impl Solver {
         let lu = DMatrix::from_fn(n, n, |i, j| scale[i] * m[(i, j)] * scale[j]).lu();
         let pivots: Vec<f64> = lu.u().diagonal().iter().map(|p| p.abs()).collect();
         let (low, high) = pivots.iter().fold((f64::INFINITY, 0.0_f64), |(l, h), p| (l.min(*p), h.max(*p)));
-        // Written so that a pivot that is not a number is refused too.
-        if n != 0 && !(MIN_PIVOT * high <= low && 0.0 < low) {
+        // False for a pivot that is not a number, too.
+        let is_regular = MIN_PIVOT * high <= low && 0.0 < low;
+        if n != 0 && !is_regular {
             return Err(CircuitError::Singular { n, pivot: low / high });
         }
         Ok(Solver { lu, scale })
