@@ -168,11 +168,10 @@ impl Random {
 
     fn symmetric(&mut self, n: usize) -> Vec<Vec<f64>> {
         let mut m = vec![vec![0.0; n]; n];
-        for i in 0..n {
-            for j in 0..=i {
-                m[i][j] = self.between(-1.0, 1.0) * 1e-12;
-                m[j][i] = m[i][j];
-            }
+        let pairs = (0..n).flat_map(|i| (0..=i).map(move |j| (i, j)));
+        for (i, j) in pairs {
+            let entry = self.between(-1.0, 1.0) * 1e-12;
+            (m[i][j], m[j][i]) = (entry, entry);
         }
         m
     }
