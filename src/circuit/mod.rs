@@ -4,6 +4,15 @@
 //! answer to a change of the matrix.
 //! Not here: any field (`physics`), any bar: bars come from the weights given here.
 //! Symbols: as in the crate's table; `u` and `w` are weights, see [`Settled`].
+//!
+//! ```
+//! use amberskin::circuit::{State, settle};
+//! // 3 pF from a live plate to a floating one, 2 pF from there to earth: a divider of 3 to 5.
+//! let c = [vec![8e-12, -3e-12], vec![-3e-12, 5e-12]];
+//! let rest = settle(&c, &[State::Potential(1e3), State::Charge(0.0)], &[])?;
+//! assert!((rest.potentials[1] - 600.0).abs() < 1e-9);
+//! # Ok::<(), amberskin::circuit::CircuitError>(())
+//! ```
 
 mod matrix;
 mod settle;

@@ -46,23 +46,45 @@ impl Loop {
 pub fn loops(open: &[Side]) -> Vec<Loop> {
     let mut steps: Vec<(u32, u32)> = open.iter().map(|s| s.run()).map(|[a, b]| (b, a)).collect();
     steps.sort_unstable();
-    let mut used = vec![false; steps.len()];
+    let mut walk = Walk { used: vec![false; steps.len()], next: (0..steps.len()).collect(), steps };
     let mut found = Vec::new();
-    for start in 0..steps.len() {
-        if !used[start] {
-            follow(&steps, &mut used, start, &mut found);
+    for start in 0..walk.steps.len() {
+        if !walk.used[start] {
+            follow(&mut walk, start, &mut found);
         }
     }
     found
 }
 
-fn follow(steps: &[(u32, u32)], used: &mut [bool], start: usize, found: &mut Vec<Loop>) {
-    let mut chain = vec![steps[start].0];
-    let mut position: HashMap<u32, usize> = HashMap::from([(steps[start].0, 0)]);
+/// The steps along open sides, sorted by their first corner, and how far they are used up.
+struct Walk {
+    steps: Vec<(u32, u32)>,
+    used: Vec<bool>,
+    /// At the first step of each corner: the first one that may be unused.
+    next: Vec<usize>,
+}
+
+impl Walk {
+    /// An unused step that begins at `from`.
+    fn step_from(&mut self, from: u32) -> Option<usize> {
+        let first = self.steps.partition_point(|s| s.0 < from);
+        let begins = |s: usize| self.steps.get(s).is_some_and(|step| step.0 == from);
+        let mut s = *self.next.get(first)?;
+        while begins(s) && self.used[s] {
+            s += 1;
+        }
+        self.next[first] = s;
+        begins(s).then_some(s)
+    }
+}
+
+fn follow(walk: &mut Walk, start: usize, found: &mut Vec<Loop>) {
+    let mut chain = vec![walk.steps[start].0];
+    let mut position: HashMap<u32, usize> = HashMap::from([(walk.steps[start].0, 0)]);
     let mut step = Some(start);
     while let Some(now) = step {
-        used[now] = true;
-        let to = steps[now].1;
+        walk.used[now] = true;
+        let to = walk.steps[now].1;
         if let Some(&from) = position.get(&to) {
             let corners = chain.split_off(from);
             for p in &corners[1..] {
@@ -74,8 +96,7 @@ fn follow(steps: &[(u32, u32)], used: &mut [bool], start: usize, found: &mut Vec
             position.insert(to, chain.len());
             chain.push(to);
         }
-        let first = steps.partition_point(|s| s.0 < to);
-        step = (first..steps.len()).take_while(|&s| steps[s].0 == to).find(|&s| !used[s]);
+        step = walk.step_from(to);
     }
     if 1 < chain.len() {
         found.push(Loop { corners: chain, closed: false });

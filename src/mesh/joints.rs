@@ -1,6 +1,9 @@
 //! T-joints: a corner of one facet on the inside of an open side of another.
 
 use crate::base::Vec3;
+use crate::geom::bounds::Bounds;
+use crate::geom::tree;
+use crate::geom::tree::Tree;
 use crate::mesh::Welded;
 use crate::mesh::edges;
 use crate::mesh::edges::Side;
@@ -17,11 +20,11 @@ pub(in crate::mesh) const JOINT_REL: f64 = 1e-6;
 /// Only corners of open sides are looked at, since only there can something fit together.
 pub(in crate::mesh) fn split(welded: &mut Welded, abs_tol: f64, list: &mut Listing<'_>) {
     let open = edges::open_sides(&edges::sides(&welded.facets));
-    let grid = Grid::new(&welded.points, &open, abs_tol);
+    let corners = Corners::new(&welded.points, &open, abs_tol);
     // The facets that an original facet has become, itself first.
     let mut parts: BTreeMap<u32, Vec<usize>> = BTreeMap::new();
     for side in &open {
-        let on = grid.on_side(&welded.points, side, &welded.facets[side.facet as usize]);
+        let on = corners.on_side(&welded.points, side, &welded.facets[side.facet as usize]);
         if on.is_empty() {
             continue;
         }
@@ -55,66 +58,66 @@ fn cut(facets: &mut Vec<[u32; 3]>, parts: &mut Vec<usize>, [a, b]: [u32; 2], on:
 }
 
 /// Corners of open sides, found by place.
-struct Grid {
+struct Corners {
     abs_tol: f64,
-    cell: f64,
-    lo: Vec3,
-    /// Cell and point, sorted.
-    cells: Vec<([i64; 3], u32)>,
+    corners: Vec<u32>,
+    tree: Tree,
 }
 
-impl Grid {
-    /// Cells as long as the mean open side: then a walk along all sides visits few more cells
-    /// than there are sides, and a cell holds few points.
-    fn new(points: &[Vec3], open: &[Side], abs_tol: f64) -> Grid {
-        let x = |p: u32| points[p as usize];
-        let sum: f64 = open.iter().map(|s| (x(s.ends[1]) - x(s.ends[0])).norm()).sum();
-        let cell = (sum / open.len().max(1) as f64).max(4.0 * abs_tol).max(f64::MIN_POSITIVE);
-        let (lo, _) = crate::mesh::weld::bounds(points);
-        let mut grid = Grid { abs_tol, cell, lo, cells: Vec::new() };
+impl Corners {
+    fn new(points: &[Vec3], open: &[Side], abs_tol: f64) -> Corners {
         let mut corners: Vec<u32> = open.iter().flat_map(|s| s.ends).collect();
         corners.sort_unstable();
         corners.dedup();
-        grid.cells = corners.iter().map(|&p| (grid.cell(&x(p)), p)).collect();
-        grid.cells.sort_unstable();
-        grid
-    }
-
-    fn cell(&self, x: &Vec3) -> [i64; 3] {
-        [0, 1, 2].map(|k| ((x[k] - self.lo[k]) / self.cell).floor() as i64)
+        let boxes: Vec<Bounds> = corners.iter().map(|&p| Bounds::of([&points[p as usize]])).collect();
+        Corners { abs_tol, corners, tree: tree::build(&boxes) }
     }
 
     /// The points inside a side, in the direction of the facet.
-    fn on_side(&self, points: &[Vec3], side: &Side, corners: &[u32; 3]) -> Vec<u32> {
+    fn on_side(&self, points: &[Vec3], side: &Side, own: &[u32; 3]) -> Vec<u32> {
         let [a, b] = side.run().map(|p| points[p as usize]);
         let length = (b - a).norm();
         let mut on: Vec<(f64, u32)> = Vec::new();
-        let steps = (2.0 * length / self.cell).ceil().max(1.0) as usize;
-        for step in 0..=steps {
-            self.visit(&(a + (b - a) * (step as f64 / steps as f64)), |p| {
-                let along = (points[p as usize] - a).dot(&(b - a)) / length;
-                let off = (points[p as usize] - a - (b - a) * (along / length)).norm();
+        let mut todo = if self.tree.nodes.is_empty() { vec![] } else { vec![0] };
+        while let Some(at) = todo.pop() {
+            let node = &self.tree.nodes[at];
+            if !passes(&a, &b, &node.bounds.grown(self.abs_tol)) {
+                continue;
+            }
+            if node.second != 0 {
+                todo.extend([node.second as usize, at + 1]);
+                continue;
+            }
+            for slot in self.tree.slots(node) {
+                let p = self.corners[self.tree.order[slot] as usize];
+                let from_a = points[p as usize] - a;
+                let along = from_a.dot(&(b - a)) / length;
+                let off = (from_a - (b - a) * (along / length)).norm();
                 let inside = self.abs_tol < along && along < length - self.abs_tol;
-                if inside && off <= self.abs_tol && !corners.contains(&p) {
+                if inside && off <= self.abs_tol && !own.contains(&p) {
                     on.push((along, p));
                 }
-            });
-        }
-        on.sort_unstable_by(|s, t| s.0.total_cmp(&t.0).then(s.1.cmp(&t.1)));
-        on.dedup_by_key(|(_, p)| *p);
-        on.into_iter().map(|(_, p)| p).collect()
-    }
-
-    /// Calls `take` with all points within a quarter of a cell and the tolerance of `x`.
-    fn visit(&self, x: &Vec3, mut take: impl FnMut(u32)) {
-        let reach = Vec3::repeat(0.25 * self.cell + self.abs_tol);
-        let (lo, hi) = (self.cell(&(x - reach)), self.cell(&(x + reach)));
-        for i in lo[0]..=hi[0] {
-            for j in lo[1]..=hi[1] {
-                let first = self.cells.partition_point(|(cell, _)| *cell < [i, j, lo[2]]);
-                let row = self.cells[first..].iter().take_while(|(cell, _)| *cell <= [i, j, hi[2]]);
-                row.for_each(|(_, p)| take(*p));
             }
         }
+        on.sort_unstable_by(|s, t| s.0.total_cmp(&t.0).then(s.1.cmp(&t.1)));
+        on.into_iter().map(|(_, p)| p).collect()
     }
+}
+
+/// Whether the segment `ab` passes through a box: the slabs of the three axes share a stretch.
+fn passes(a: &Vec3, b: &Vec3, bounds: &Bounds) -> bool {
+    let (mut from, mut to) = (0.0_f64, 1.0_f64);
+    for k in 0..3 {
+        let step = b[k] - a[k];
+        let ends = [bounds.lo[k] - a[k], bounds.hi[k] - a[k]];
+        if step == 0.0 {
+            if 0.0 < ends[0] || ends[1] < 0.0 {
+                return false;
+            }
+            continue;
+        }
+        let [s, t] = ends.map(|end| end / step);
+        (from, to) = (from.max(s.min(t)), to.min(s.max(t)));
+    }
+    from <= to
 }

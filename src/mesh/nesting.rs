@@ -69,24 +69,26 @@ pub(in crate::mesh) fn is_closed(shell: &Welded) -> bool {
 
 /// For each shell, the number of others that hold it.
 fn depths(shells: &[Welded], sheet: bool) -> Vec<usize> {
+    let mut depths = vec![0; shells.len()];
     if sheet || shells.len() < 2 {
-        return vec![0; shells.len()];
+        return depths;
     }
     let boxes: Vec<(Vec3, Vec3)> = shells.iter().map(|s| weld::bounds(&s.points)).collect();
-    let mut depths = vec![0; shells.len()];
+    let mut by_x: Vec<usize> = (0..shells.len()).collect();
+    by_x.sort_by(|&s, &t| boxes[s].0.x.total_cmp(&boxes[t].0.x));
     for (outer, shell) in shells.iter().enumerate() {
-        let inside_box = |x: &Vec3| (0..3).all(|k| boxes[outer].0[k] < x[k] && x[k] < boxes[outer].1[k]);
+        let (lo, hi) = boxes[outer];
+        let first = by_x.partition_point(|&s| boxes[s].0.x < lo.x);
         let mut prepared: Option<Winding> = None;
-        for (inner, other) in shells.iter().enumerate().filter(|&(inner, _)| inner != outer) {
-            let votes = voters(other).filter(inside_box);
-            let held = votes
-                .filter(|x| {
-                    let prepared = prepared.get_or_insert_with(|| winding::prepare(shells::triangles(shell)));
-                    // Whichever way its normals point.
-                    winding::INSIDE <= prepared.at(x).abs()
-                })
-                .count();
-            if VOTES < 2 * held {
+        for &inner in by_x[first..].iter().take_while(|&&s| boxes[s].0.x <= hi.x) {
+            let within = (0..3).all(|k| lo[k] <= boxes[inner].0[k] && boxes[inner].1[k] <= hi[k]);
+            if inner == outer || !within {
+                continue;
+            }
+            let prepared = prepared.get_or_insert_with(|| winding::prepare(shells::triangles(shell)));
+            // Whichever way its normals point.
+            let holds = |x: &Vec3| winding::INSIDE <= prepared.at(x).abs();
+            if VOTES < 2 * voters(&shells[inner]).filter(holds).count() {
                 depths[inner] += 1;
             }
         }

@@ -7,7 +7,8 @@ pub const ESTIMATE: &str = "estimate for comparing designs; not a rating, certif
 pub const CHARGED: &str = "may stay charged after switch-off; earth before touching.";
 
 /// Goes with every floating electrode, with its potential put in by [`floats_at`].
-pub const FLOATING: &str = "a floating electrode takes a potential of its own: treat as live until earthed.";
+pub const FLOATING: &str =
+    "a floating electrode floats at a potential of its own: treat as live until earthed.";
 
 /// What [`crate::record::Record::cautions`] holds.
 pub const CAUTIONS: [&str; 3] = [ESTIMATE, FLOATING, CHARGED];

@@ -12,8 +12,9 @@ use std::io::Write;
 use std::path::Path;
 use std::path::PathBuf;
 
-/// Longest record read [B]: a record of three electrodes and one look of 51 points takes 30 kB, so
-/// this is room for some million look points, and a wrong file cannot take the memory.
+/// Longest record read [B]: a record of three electrodes, two voltage cases and a look takes 10 kB and
+/// a look point 200 B, so this is room for a million look points, and a wrong file cannot take the
+/// memory.
 const MAX_BYTES: u64 = 256 << 20;
 
 /// Why a record was not written or read.
@@ -70,6 +71,14 @@ pub enum RecordError {
         /// Number of electrodes.
         expected: usize,
     },
+    /// A record to be written has a matrix or list that does not fit the number of rows.
+    #[error("the record does not fit its {expected} electrodes, at `{key}`; nothing was written")]
+    Misfit {
+        /// The key.
+        key: &'static str,
+        /// Number of electrodes.
+        expected: usize,
+    },
     /// A number to be written is infinite or not a number.
     #[error("the record holds a number that is not finite, at `{key}`; nothing was written")]
     NotFinite {
@@ -83,8 +92,12 @@ pub enum RecordError {
 /// The text is read back before it is written, so what stands in the file is what was meant.
 ///
 /// # Errors
-/// [`RecordError::NotFinite`] for a number that JSON cannot hold, [`RecordError::Write`] of `out`.
+/// [`RecordError::NotFinite`] for a number that JSON cannot hold, [`RecordError::Misfit`] for lists
+/// that [`read`] would refuse, [`RecordError::Write`] of `out`.
 pub fn write(record: &Record, out: &mut dyn Write) -> Result<(), RecordError> {
+    if let Some(key) = misfit(record) {
+        return Err(RecordError::Misfit { key, expected: record.electrodes.len() });
+    }
     let mut text = serde_json::to_string_pretty(record)
         .map_err(|e| RecordError::NotFinite { key: format!("a key that is not text ({e})") })?;
     // JSON has no word for such numbers and `null` is written instead: it fails to read back, or,

@@ -4,32 +4,19 @@ use crate::record::BudgetLine;
 use crate::record::Look;
 use crate::record::Record;
 use crate::record::VoltageCase;
-use crate::record::cautions;
 use crate::record::cautions::CHARGED;
-use crate::record::cautions::ESTIMATE;
 use crate::report::Printing;
 use crate::report::digits;
 use crate::report::form::Form;
 use crate::report::form::clean;
-use crate::report::form::title;
 use crate::report::tables;
-
-/// Words of the paper trail, in the order they are printed.
-const TRAIL: [(&str, &str); 6] = [
-    ("study.question", "question"),
-    ("study.prepared", "prepared"),
-    ("study.checked", "checked"),
-    ("study.approved", "approved"),
-    ("study.organisation", "organisation"),
-    ("study.left_out", "not modelled"),
-];
 
 /// Most points of a look printed one by one [1]; of longer ones the ends and the extremes stand here.
 const LOOK_POINTS: usize = 11;
 
 /// The whole sheet.
 pub fn sheet(record: &Record, printing: &Printing) -> String {
-    let mut text = head(record);
+    let mut text = tables::head_text(record);
     for form in Form::ALL {
         text += &tables::matrix_text(record, form, printing);
         text.push('\n');
@@ -52,30 +39,6 @@ pub fn sheet(record: &Record, printing: &Printing) -> String {
     text + &hashes_text(record)
 }
 
-fn head(record: &Record) -> String {
-    let mut text = format!("{}\n", title(record));
-    for (key, label) in TRAIL {
-        if let Some(value) = record.case.resolved.get(key).filter(|value| !value.is_empty()) {
-            text += &format!("  {label}: {}\n", clean(value));
-        }
-    }
-    text += &format!("  by {} {}\n\nCautions\n", clean(&record.program.name), clean(&record.program.version));
-    for caution in &record.cautions {
-        text += &format!("  {}\n", clean(caution));
-    }
-    text += &format!("\nVerdict: {}: {ESTIMATE}\n", tables::judged(&record.verdict.word));
-    for reason in &record.verdict.reasons {
-        text += &format!("  {}\n", clean(reason));
-    }
-    if !record.verdict.codes.is_empty() {
-        let codes: Vec<String> = record.verdict.codes.iter().map(i32::to_string).collect();
-        text += &format!("  exit codes that hold: {}\n", codes.join(", "));
-    }
-    let (asked, reached) = (record.accuracy.asked, record.accuracy.reached);
-    let (asked, reached) = (digits::percent(asked, false), digits::percent(reached, false));
-    text + &format!("  bar of the capacitances: asked {asked}, reached {reached}\n\n")
-}
-
 /// Potentials, charges and energy of one voltage case.
 fn electrical_text(record: &Record, case: &VoltageCase) -> String {
     let by_row =
@@ -86,7 +49,7 @@ fn electrical_text(record: &Record, case: &VoltageCase) -> String {
         let volt = tables::in_time(case, &|k| digits::engineering(k * v, k * bar, "V"));
         let name_shown = clean(name);
         volts += &if case.floating.contains(name) {
-            format!("    {name_shown}: {}\n", cautions::floats_at(&volt))
+            format!("    {name_shown}: {}\n", tables::floating_text(case, name))
         } else {
             format!("    {name_shown}: {volt}\n")
         };

@@ -14,6 +14,7 @@ use crate::record::cautions::ESTIMATE;
 use crate::report::form::REFERENCE;
 use crate::report::form::clean;
 use crate::report::form::title;
+use crate::report::tables::judged;
 use std::io;
 use std::io::Write;
 
@@ -90,8 +91,7 @@ fn head(record: &Record, forms: &[Form], unit: &str, out: &mut dyn Write) -> io:
     }
     writeln!(out, "# reference: {REFERENCE}")?;
     writeln!(out, "# unit: {unit}")?;
-    let verdict = clean(&record.verdict.word);
-    writeln!(out, "# accuracy {verdict}: {ESTIMATE}")?;
+    writeln!(out, "# verdict {}: {ESTIMATE}", judged(&record.verdict.word))?;
     for caution in &record.cautions {
         writeln!(out, "# caution: {}", clean(caution))?;
     }

@@ -1,8 +1,8 @@
 //! Digits cut to the bar, engineering units, columns aligned on the point.
 
-/// Significant digits of a number whose bar is zero [1]: more than any bar here justifies, fewer
-/// than the sixteen at which rounding of the sums shows.
-const ZERO_BAR_DIGITS: usize = 10;
+/// Significant digits of a number whose bar is zero [1]: it was given, and is shown as typed or, times
+/// a square root of two, with more digits than anybody sets a voltage to.
+const ZERO_BAR_DIGITS: usize = 7;
 
 /// Most significant digits of any number [1]: a double holds 15 for certain.
 const MOST_DIGITS: i32 = 15;
@@ -223,10 +223,10 @@ mod tests {
     fn zero_bars_minus_zero_and_huge_values() {
         shows(100.0, 0.0, ("100", "0"));
         shows(-0.0, 0.0, ("0", "0"));
-        shows(1.0 / 3.0, 0.0, ("0.3333333333", "0"));
+        shows(1.0 / 3.0, 0.0, ("0.3333333", "0"));
         shows(1.23456e300, 1e297, ("1.2346e300", "0.0010e300"));
         shows(3e-300, 2e-301, ("3.00e-300", "0.20e-300"));
-        shows(5e-324, 0.0, ("4.940656458e-324", "0"));
+        shows(5e-324, 0.0, ("4.940656e-324", "0"));
         shows(f64::NAN, 1.0, ("not finite", "not finite"));
         shows(1.0, f64::INFINITY, ("not finite", "not finite"));
         shows(2.0, 1e-30, ("2.00000000000000", "0.00000000000001"));

@@ -9,6 +9,7 @@ use crate::record::cautions::ESTIMATE;
 use crate::report::form::REFERENCE;
 use crate::report::form::clean;
 use crate::report::form::title;
+use crate::report::tables;
 use std::collections::BTreeSet;
 use std::io;
 use std::io::Write;
@@ -117,9 +118,11 @@ fn head(record: &Record, pins: &[String], out: &mut dyn Write) -> io::Result<()>
         clean(&record.program.version),
         clean(&record.case.sha256)
     )?;
-    writeln!(out, "* accuracy {}: {ESTIMATE}", clean(&record.verdict.word))?;
-    for row in record.rows.iter().zip(pins).filter(|(row, _)| row.role == "floating") {
-        writeln!(out, "* {} floats: treat as live until earthed.", row.1)?;
+    writeln!(out, "* verdict {}: {ESTIMATE}", tables::judged(&record.verdict.word))?;
+    for (name, pin) in record.electrodes.iter().zip(pins) {
+        for case in record.voltage_cases.iter().filter(|case| case.floating.contains(name)) {
+            writeln!(out, "* {pin} in `{}`: {}", clean(&case.name), tables::floating_text(case, name))?;
+        }
     }
     writeln!(out, "* {CHARGED}")?;
     for (name, pin) in record.electrodes.iter().zip(pins) {

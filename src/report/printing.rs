@@ -1,5 +1,7 @@
 //! Units of printed numbers.
 
+use crate::base::units;
+use crate::base::units::Dimension;
 use crate::record::Record;
 
 /// Units of printed numbers: names, and the SI value of one unit.
@@ -39,45 +41,19 @@ impl Default for Printing {
 pub fn of_record(record: &Record) -> Printing {
     let mut printing = Printing::default();
     let word = |key: &str| record.case.resolved.get(key).map(|text| text.trim().trim_matches('"').to_owned());
-    if let Some((name, si)) = word("units.length").and_then(|name| known(name, LENGTHS)) {
+    let unit = |key: &str, dimension: Dimension| {
+        let name = word(key)?;
+        let si = units::factor(&name, dimension).ok()?;
+        Some((name, si))
+    };
+    if let Some((name, si)) = unit("units.length", Dimension::Length) {
         (printing.length_name, printing.length) = (name, si);
     }
-    if let Some((name, si)) = word("units.capacitance").and_then(|name| known(name, CAPACITANCES)) {
+    if let Some((name, si)) = unit("units.capacitance", Dimension::Capacitance) {
         (printing.capacitance_name, printing.capacitance) = (name, si);
     }
-    if let Some((name, si)) = word("units.field").and_then(|name| known(name, FIELDS)) {
+    if let Some((name, si)) = unit("units.field", Dimension::Field) {
         (printing.field_name, printing.field) = (name, si);
     }
     printing
-}
-
-type Units = &'static [(&'static str, f64)];
-
-const LENGTHS: Units =
-    &[("m", 1.0), ("cm", 1e-2), ("mm", 1e-3), ("um", 1e-6), ("µm", 1e-6), ("nm", 1e-9), ("in", 25.4e-3)];
-const CAPACITANCES: Units = &[
-    ("F", 1.0),
-    ("mF", 1e-3),
-    ("uF", 1e-6),
-    ("µF", 1e-6),
-    ("nF", 1e-9),
-    ("pF", 1e-12),
-    ("fF", 1e-15),
-    ("aF", 1e-18),
-];
-const FIELDS: Units = &[
-    ("V/m", 1.0),
-    ("kV/m", 1e3),
-    ("MV/m", 1e6),
-    ("V/cm", 1e2),
-    ("kV/cm", 1e5),
-    ("V/mm", 1e3),
-    ("kV/mm", 1e6),
-    ("V/um", 1e6),
-    ("V/µm", 1e6),
-];
-
-fn known(name: String, units: Units) -> Option<(String, f64)> {
-    let si = units.iter().find(|(known, _)| *known == name)?.1;
-    Some((name, si))
 }

@@ -4,18 +4,37 @@ use crate::record::Edge;
 use crate::record::Maximum;
 use crate::record::Record;
 use crate::record::VoltageCase;
+use crate::record::cautions;
 use crate::record::cautions::ESTIMATE;
 use crate::report::Printing;
 use crate::report::digits;
 use crate::report::form::Form;
 use crate::report::form::REFERENCE;
 use crate::report::form::clean;
+use crate::report::form::title;
+use std::collections::BTreeMap;
 use std::f64::consts::SQRT_2;
+
+/// Words of the paper trail, in the order they are printed.
+const TRAIL: [(&str, &str); 6] = [
+    ("study.question", "question"),
+    ("study.prepared", "prepared"),
+    ("study.checked", "checked"),
+    ("study.approved", "approved"),
+    ("study.organisation", "organisation"),
+    ("study.left_out", "not modelled"),
+];
+
+/// Most unbounded edges printed for one voltage case [1]: those with the highest field at the first
+/// stated distance; a body with many creases would fill pages.
+const EDGES: usize = 12;
 
 /// Widest table before it goes on below [1].
 const WIDTH: usize = 110;
 
 /// One form of the matrix as a table, each entry with its bar and cut to it.
+///
+/// Whoever prints it alone puts [`head_text`] above it.
 pub fn matrix_text(record: &Record, form: Form, printing: &Printing) -> String {
     let (unit, factor) = match form {
         Form::PotentialCoefficients => {
@@ -51,10 +70,15 @@ pub fn matrix_text(record: &Record, form: Form, printing: &Printing) -> String {
 }
 
 /// The highest surface field of every electrode in every voltage case, with limits and margins.
+///
+/// Whoever prints it alone puts [`head_text`] above it.
 pub fn stress_text(record: &Record, printing: &Printing) -> String {
     let mut text = String::new();
     for case in &record.voltage_cases {
         text += &case_heading(case);
+        for name in &case.floating {
+            text += &format!("  {}: {}\n", clean(name), floating_text(case, name));
+        }
         text += &maxima_text(case, &record.edges, printing);
         text.push('\n');
     }
@@ -62,6 +86,38 @@ pub fn stress_text(record: &Record, printing: &Printing) -> String {
         text += "No voltage case, so no surface field.\n";
     }
     text
+}
+
+/// Title, cautions, verdict and accuracy: what stands over everything printed from a record.
+pub fn head_text(record: &Record) -> String {
+    let mut text = format!("{}\n", title(record));
+    for (key, label) in TRAIL {
+        if let Some(value) = record.case.resolved.get(key).filter(|value| !value.is_empty()) {
+            text += &format!("  {label}: {}\n", clean(value));
+        }
+    }
+    text += &format!("  by {} {}\n\nCautions\n", clean(&record.program.name), clean(&record.program.version));
+    for caution in &record.cautions {
+        text += &format!("  {}\n", clean(caution));
+    }
+    text += &format!("\nVerdict: {}: {ESTIMATE}\n", judged(&record.verdict.word));
+    for reason in &record.verdict.reasons {
+        text += &format!("  {}: {ESTIMATE}\n", clean(reason));
+    }
+    if !record.verdict.codes.is_empty() {
+        let codes: Vec<String> = record.verdict.codes.iter().map(i32::to_string).collect();
+        text += &format!("  exit codes that hold: {}\n", codes.join(", "));
+    }
+    let (asked, reached) = (record.accuracy.asked, record.accuracy.reached);
+    let (asked, reached) = (digits::percent(asked, false), digits::percent(reached, false));
+    text + &format!("  bar of the capacitances: asked {asked}, reached {reached}\n\n")
+}
+
+/// The caution of a floating electrode with its potential in one voltage case.
+pub(crate) fn floating_text(case: &VoltageCase, name: &str) -> String {
+    let by_row = |map: &BTreeMap<String, f64>| map.get(name).copied().unwrap_or(0.0);
+    let (v, bar) = (by_row(&case.potentials_volt), by_row(&case.potentials_bar_volt));
+    cautions::floats_at(&in_time(case, &|k| digits::engineering(k * v, k * bar, "V")))
 }
 
 /// `Voltage case … ` and what its numbers are in time.
@@ -89,8 +145,14 @@ pub(crate) fn maxima_text(case: &VoltageCase, edges: &[Edge], printing: &Printin
     for maximum in &case.maxima {
         text += &maximum_text(maximum, case, printing);
     }
-    for edge in edges.iter().filter(|edge| edge.case == case.name) {
+    let mut edges: Vec<&Edge> = edges.iter().filter(|edge| edge.case == case.name).collect();
+    let near = |edge: &Edge| edge.field_at.first().map_or(edge.strength, |at| at.field_v_per_m).abs();
+    edges.sort_by(|a, b| near(b).total_cmp(&near(a)));
+    for edge in edges.iter().take(EDGES) {
         text += &edge_text(edge, case, printing);
+    }
+    if EDGES < edges.len() {
+        text += &format!("    {} more unbounded edges stand in the record\n", edges.len() - EDGES);
     }
     text
 }

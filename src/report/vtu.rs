@@ -17,7 +17,8 @@ use std::io::Write;
 
 /// Bytes in a compressed block [B].
 ///
-/// A 5,000-panel file of three rows is 4 % larger with 4 KiB and no smaller with 256 KiB.
+/// A file of 8,192 panels and two rows (1.38 MB) is 2.8 % larger with 4 KiB and 0.4 % smaller with
+/// 256 KiB.
 const BLOCK: usize = 1 << 15;
 
 /// VTK's number for a triangle.

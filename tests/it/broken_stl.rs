@@ -167,7 +167,7 @@ fn awkward_text_is_read() {
     let t = text();
     let two = format!("{t}{}", stl_bodies::ascii("other", &stl_bodies::ball(Vec3::zeros(), 1.0, 0)));
     let no_end = t.replace("endsolid part\n", "");
-    let latin = [b"solid Stra\xdfe", text()[10..].as_bytes()].concat();
+    let latin = [b"solid Stra\xdfe", &text().as_bytes()[10..]].concat();
     check(vec![
         ("two solids", two.clone().into_bytes(), Read(&[12, 8], &[])),
         ("UTF-8 mark", format!("\u{feff}{t}").into_bytes(), Read(&[12], &[])),
@@ -258,12 +258,12 @@ fn broken_text_is_refused_with_line_and_word() {
         ("a stray word", text_with("  facet", "  face"), Refused(&["line 2", "`face` where `facet normal`"])),
         (
             "cut inside a facet",
-            text()[..200].as_bytes().to_vec(),
+            text().as_bytes()[..200].to_vec(),
             Refused(&["line 11", "the file ends where three"]),
         ),
         (
             "cut behind a corner",
-            text()[..80].as_bytes().to_vec(),
+            text().as_bytes()[..80].to_vec(),
             Refused(&["line 5", "the file ends where `vertex`"]),
         ),
         (
@@ -336,7 +336,7 @@ fn mangled(valid: &[[Vec3; 3]], random: &mut Random) -> Facets {
 /// Repairs and accepts; an accepted solid is closed, runs consistently and holds a volume.
 fn inspect(facets: &[[Vec3; 3]], sheet: bool) -> bool {
     let Ok((surface, _)) = accept::body(facets, sheet, "part") else { return false };
-    assert_eq!(surface.normals.len(), surface.welded.facets.len());
+    assert_eq!(surface.normals.len(), surface.welded.facets.len(), "normals of each facet");
     if !sheet {
         let sides = edges::sides(&surface.welded.facets);
         for edge in edges::by_edge(&sides) {
@@ -355,6 +355,29 @@ fn peak_memory() -> Option<usize> {
     let status = std::fs::read_to_string("/proc/self/status").ok()?;
     let line = status.lines().find_map(|line| line.strip_prefix("VmHWM:"))?;
     Some(line.trim().strip_suffix(" kB")?.parse::<usize>().ok()? * 1024)
+}
+
+#[test]
+fn many_shells_and_many_loops_do_not_multiply() {
+    let corner = |n: usize| Vec3::new((n % 30) as f64, (n / 30 % 30) as f64, (n / 900) as f64);
+    let tetrahedron = |n: usize| {
+        let o = corner(n);
+        let [x, y, z] = [Vec3::x(), Vec3::y(), Vec3::z()].map(|e| o + e * 0.5);
+        [[o, y, x], [o, z, y], [o, x, z], [x, y, z]]
+    };
+    let heap: Facets = (0..20_000).flat_map(tetrahedron).collect();
+    let fan: Facets = (0..20_000)
+        .map(|n| {
+            let at = |s: f64| Vec3::new((n as f64 + s).cos(), (n as f64 + s).sin(), n as f64 * 1e-4);
+            [Vec3::zeros(), at(0.0), at(1e-3)]
+        })
+        .collect();
+    for (facets, is_accepted) in [(heap, true), (fan, false)] {
+        let start = Instant::now();
+        let result = accept::body(&facets, false, "heap");
+        assert!(start.elapsed() < LIMIT, "{:?}", start.elapsed());
+        assert_eq!(result.is_ok(), is_accepted, "{:?}", result.err());
+    }
 }
 
 /// Runs in a process of its own, so that its peak memory is its own.
