@@ -172,7 +172,11 @@ fn gap(a: &Part, b: &Part, limit: f64) -> Option<Gap> {
     let (mut found, mut best, mut measured) = (None, limit * limit, 0);
     a.skin.tree().closest(b.skin.tree(), limit * limit, MOST_MEASURED, |f, g, _| {
         measured += 1;
-        let closest = distance::triangles(a.triangle(f), b.triangle(g));
+        let (first, second) = (a.triangle(f), b.triangle(g));
+        if best <= distance::at_least_sq(first, second).max(distance::at_least_sq(second, first)) {
+            return best;
+        }
+        let closest = distance::triangles(first, second);
         if closest.distance_sq < best {
             best = closest.distance_sq;
             found = Some((closest.on_first + closest.on_second) * 0.5);
