@@ -87,6 +87,18 @@ pub fn triangles(first: &Triangle, second: &Triangle) -> Closest {
     best
 }
 
+/// A cheap lower bound of the squared distance of two triangles [m²]: how far the second one stays
+/// on one side of the plane of the first.
+pub fn at_least_sq(first: &Triangle, second: &Triangle) -> f64 {
+    let normal = first.cross();
+    let heights = second.corners.map(|p| (p - first.corners[0]).dot(&normal));
+    let low = heights[0].min(heights[1]).min(heights[2]);
+    let high = heights[0].max(heights[1]).max(heights[2]);
+    let off = low.max(-high).max(0.0);
+    let area_sq = normal.norm_squared();
+    if 0.0 < area_sq { off * off / area_sq } else { 0.0 }
+}
+
 /// Where an edge of `by` passes through the inside of `triangle`, if one does [m].
 fn pierced(triangle: &Triangle, by: &Triangle) -> Option<Vec3> {
     let normal = triangle.cross();

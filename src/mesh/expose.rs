@@ -343,16 +343,14 @@ impl Conductor<'_> {
         meets: Option<&Meets>,
         side: Side,
     ) -> Result<(), TooFine> {
+        let mut cuts = meets.map_or_else(Vec::new, |m| m.cuts.clone());
         if let (Side::Across, Some(plane)) = (side, self.plane) {
             let level = intersect::section(facet, &plane.through, &plane.facing, self.abs_tol);
-            if let Section::Segment(ends) = level {
-                cutter.cut(ends)?;
-            }
+            cuts.extend(if let Section::Segment(ends) = level { Some(ends) } else { None });
         }
-        let mut cuts = meets.map_or_else(Vec::new, |m| m.cuts.clone());
         let length = |s: &[Vec3; 2]| (s[1] - s[0]).norm_squared();
         cuts.sort_by(|s, t| length(t).total_cmp(&length(s)));
-        cuts.into_iter().try_for_each(|ends| cutter.cut(ends))
+        cutter.cut(&cuts)
     }
 
     /// Why the cell of a facet around `x` is left out, if it is.

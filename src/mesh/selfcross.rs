@@ -20,12 +20,9 @@ const MOST_LISTED: usize = 5;
 /// Crossings after which the search ends: enough to refuse, and a bound on the time.
 const MOST_FOUND: usize = 1_000;
 
-/// Pairs of facets with overlapping boxes that are looked at, per facet and at least; a clean body
-/// has some twenty a facet.
-const PAIRS_PER_FACET: usize = 400;
-
-/// Fewest pairs that are looked at, however small the body.
-const PAIRS_AT_LEAST: usize = 4_000_000;
+/// Pairs of facets with overlapping boxes that are looked at; a round body has some twenty a facet,
+/// a disc drawn as a fan of 5,000 facets some millions in all.
+const MOST_PAIRS: usize = 60_000_000;
 
 /// Where facets of `surface` without a common corner pass through each other or overlap in one plane.
 /// Crossings shorter or shallower than the contact tolerance are passed over.
@@ -81,7 +78,6 @@ struct Found {
 fn search(part: &Part) -> Found {
     let abs_tol = contact::tolerance([&part.bounds()]);
     let n = part.corners.len();
-    let budget = (PAIRS_PER_FACET * n).max(PAIRS_AT_LEAST);
     let (mut pairs, mut seen, mut seen_shells) = (Vec::new(), 0, BTreeSet::new());
     for f in 0..n {
         let first = part.triangle(f);
@@ -90,7 +86,7 @@ fn search(part: &Part) -> Found {
             let shells = [part.shell_of[f], part.shell_of[g]];
             let same_shell = shells[0] == shells[1];
             if g <= f || (same_shell && part.joined(f, g)) || seen_shells.contains(&shells) {
-                return seen < budget;
+                return seen < MOST_PAIRS;
             }
             let second = part.triangle(g);
             let place =
@@ -101,13 +97,13 @@ fn search(part: &Part) -> Found {
                     seen_shells.extend([shells, [shells[1], shells[0]]]);
                 }
             }
-            pairs.len() < MOST_FOUND && seen < budget
+            pairs.len() < MOST_FOUND && seen < MOST_PAIRS
         });
-        if MOST_FOUND <= pairs.len() || budget <= seen {
+        if MOST_FOUND <= pairs.len() || MOST_PAIRS <= seen {
             break;
         }
     }
-    Found { cut_short: budget <= seen, pairs }
+    Found { cut_short: MOST_PAIRS <= seen, pairs }
 }
 
 /// Where two facets pass through each other or share an area.

@@ -141,6 +141,53 @@ fn a_rod_through_a_plate_is_hidden_inside_it() {
     assert_area(&assembly, 32.0 + 16.0 - 2.0 * 0.04 + 2.0 * 0.04 + 4.0 * 0.2 * 2.0);
 }
 
+/// Surface of the cells of a grid that `filled` names, in faces of one cell.
+fn surface_of_cells(filled: impl Fn(i32, i32, i32) -> bool) -> f64 {
+    let mut faces = 0;
+    for (x, y, z) in (-1..7).flat_map(|x| (-1..7).flat_map(move |y| (-1..7).map(move |z| (x, y, z)))) {
+        let here = filled(x, y, z);
+        let next = [filled(x + 1, y, z), filled(x, y + 1, z), filled(x, y, z + 1)];
+        faces += next.iter().filter(|n| **n != here).count();
+    }
+    faces as f64
+}
+
+/// Boxes with corners on a grid, in all ways of touching and overlapping: the surface of the union
+/// is counted cell by cell.  Turned boxes are rounded to single precision, as STL does.
+#[test]
+fn bonded_boxes_on_a_grid_show_the_surface_counted_in_cells() {
+    let mut seed = 7_u64;
+    let mut dice = move |n: u64| {
+        seed = seed.wrapping_mul(6_364_136_223_846_793_005).wrapping_add(1_442_695_040_888_963_407);
+        ((seed >> 33) % n) as i32
+    };
+    for case in 0..150 {
+        let boxes: Vec<[i32; 6]> = (0..2 + dice(4))
+            .map(|_| {
+                let lo = [dice(4), dice(4), dice(4)];
+                [lo[0], lo[1], lo[2], lo[0] + 1 + dice(2), lo[1] + 1 + dice(2), lo[2] + 1 + dice(2)]
+            })
+            .collect();
+        let turned = case % 2 == 1;
+        let all = boxes.iter().enumerate().map(|(b, s)| {
+            let corner = |k: usize| vec3(f64::from(s[k]), f64::from(s[k + 1]), f64::from(s[k + 2]));
+            let facets = bodies::cuboid(corner(0), corner(3), 1 + b % 3);
+            let pose = |x: &Vec3| if turned { turn(x).map(|c| f64::from(c as f32)) } else { *x };
+            solid(&format!("b{b}"), &bodies::moved(&facets, pose))
+        });
+        let names: Vec<String> = (0..boxes.len()).map(|b| format!("b{b}")).collect();
+        let assembly = expose(all.collect(), &[names], None).unwrap();
+        let expected = surface_of_cells(|x, y, z| {
+            boxes.iter().any(|s| s[0] <= x && x < s[3] && s[1] <= y && y < s[4] && s[2] <= z && z < s[5])
+        });
+        let (found, rel_tol) = (area(&assembly), if turned { 1e-5 } else { 1e-9 });
+        assert!(
+            (found - expected).abs() <= rel_tol * expected,
+            "{case} {boxes:?}: {found}, counted {expected}"
+        );
+    }
+}
+
 /// A faceted sphere half sunk into a box: the flat facets' own areas are the closed form.
 #[test]
 fn a_fine_contact_line_on_coarse_faces_keeps_the_area() {
