@@ -1,16 +1,15 @@
-//! Many far triangles at once: the exact moments of each panel up to degree four.
+//! The far panel: exact moments of a triangle up to degree four.
 //!
 //! The expansion about the centroid is
 //! `∫dS/r = (A/R) Σ_n ⟨|y|ⁿ P_n(cos γ)⟩ / Rⁿ`, `R` the distance from the centroid, `⟨⟩` the mean over
 //! the triangle; degree one vanishes (Jackson, Classical Electrodynamics, section 4.1).  In the plane of
 //! the panel with its principal axes the means are 1, 2, 4 and 5 moments.
 
+use super::lanes::LANES;
+use super::lanes::Lane;
 use super::rules;
 use crate::base::Vec3;
 use crate::geom::Triangle;
-
-/// Panels evaluated together.
-const LANES: usize = 8;
 
 /// Distance from the centroid, in longest edges, from which the expansion serves [1].
 ///
@@ -19,42 +18,25 @@ const LANES: usize = 8;
 /// seen, 1e-5; a larger value moves no digit of the cube at 5,900 panels that counts.
 pub const FAR_IN_EDGES: f64 = 4.0;
 
-type Lane = [f64; LANES];
-
-/// Moments of eight panels, lane by lane.
-#[derive(Clone, Debug)]
-struct Block {
-    centre: [Lane; 3],
-    u: [Lane; 3],
-    v: [Lane; 3],
+/// Moments of one triangle about its centroid, in its principal axes.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Moments {
+    centre: [f64; 3],
+    u: [f64; 3],
+    v: [f64; 3],
     /// Square of the distance from which the expansion serves [m²].
-    far_sq: Lane,
-    area: Lane,
-    second: [Lane; 2],
-    third: [Lane; 4],
-    fourth: [Lane; 5],
+    far_sq: f64,
+    area: f64,
+    second: [f64; 2],
+    third: [f64; 4],
+    fourth: [f64; 5],
 }
 
-impl Block {
-    const EMPTY: Block = Block {
-        centre: [[0.0; LANES]; 3],
-        u: [[0.0; LANES]; 3],
-        v: [[0.0; LANES]; 3],
-        far_sq: [-1.0; LANES],
-        area: [0.0; LANES],
-        second: [[0.0; LANES]; 2],
-        third: [[0.0; LANES]; 4],
-        fourth: [[0.0; LANES]; 5],
-    };
-
-    fn set(&mut self, k: usize, tri: &Triangle) {
+impl Moments {
+    /// Moments of `tri`, by a rule that is exact for them.
+    pub fn of(tri: &Triangle) -> Self {
         let (centre, [u, v]) = (tri.centroid(), principal_axes(tri));
         let far = FAR_IN_EDGES * tri.longest_edge();
-        for i in 0..3 {
-            (self.centre[i][k], self.u[i][k], self.v[i][k]) = (centre[i], u[i], v[i]);
-        }
-        self.far_sq[k] = far * far;
-        self.area[k] = tri.area();
         let mean = |i: i32, j: i32| -> f64 {
             let term = |(w, weight): &([f64; 3], f64)| {
                 let y = tri.at(*w) - centre;
@@ -62,46 +44,60 @@ impl Block {
             };
             rules::SIX.iter().map(term).sum()
         };
-        self.second[0][k] = mean(2, 0);
-        self.second[1][k] = mean(0, 2);
-        for j in 0..4 {
-            self.third[j as usize][k] = mean(3 - j, j);
-        }
-        for j in 0..5 {
-            self.fourth[j as usize][k] = mean(4 - j, j);
+        Moments {
+            centre: centre.into(),
+            u: u.into(),
+            v: v.into(),
+            far_sq: far * far,
+            area: tri.area(),
+            second: [mean(2, 0), mean(0, 2)],
+            third: [mean(3, 0), mean(2, 1), mean(1, 2), mean(0, 3)],
+            fourth: [mean(4, 0), mean(3, 1), mean(2, 2), mean(1, 3), mean(0, 4)],
         }
     }
 
-    /// Writes `∫dS/r` of its panels, or not-a-number where `x` is too near.
+    /// `∫dS/r` as seen from `x` [m], whatever the distance.
+    pub fn potential(&self, x: &Vec3) -> f64 {
+        let lane = |k: usize| [x[k]; LANES];
+        let (mut out, mut r_sq) = ([0.0; LANES], [0.0; LANES]);
+        self.expand([&lane(0), &lane(1), &lane(2)], &mut out, &mut r_sq);
+        out[0]
+    }
+
+    /// `∫dS/r` as seen from eight points [m]; not-a-number for points nearer than [`FAR_IN_EDGES`].
     #[inline(always)]
-    fn potentials(&self, x: &[f64; 3], out: &mut [f64; LANES]) {
-        for (k, value) in out.iter_mut().enumerate() {
-            let d = [x[0] - self.centre[0][k], x[1] - self.centre[1][k], x[2] - self.centre[2][k]];
-            let u = d[0] * self.u[0][k] + d[1] * self.u[1][k] + d[2] * self.u[2][k];
-            let v = d[0] * self.v[0][k] + d[1] * self.v[1][k] + d[2] * self.v[2][k];
-            let r_sq = d[0] * d[0] + d[1] * d[1] + d[2] * d[2];
+    pub(super) fn potentials(&self, x: [&Lane; 3], out: &mut Lane) {
+        let mut r_sq = [0.0; LANES];
+        self.expand(x, out, &mut r_sq);
+        for k in 0..LANES {
+            out[k] = if r_sq[k] < self.far_sq { f64::NAN } else { out[k] };
+        }
+    }
+
+    #[inline(always)]
+    fn expand(&self, x: [&Lane; 3], out: &mut Lane, r_sq: &mut Lane) {
+        let ([m20, m02], [t30, t21, t12, t03]) = (self.second, self.third);
+        let [f40, f31, f22, f13, f04] = self.fourth;
+        let (m, t3, t0) = (m20 + m02, t30 + t12, t21 + t03);
+        let (f4, f3, f0, f) = (f40 + f22, 2.0 * (f31 + f13), f22 + f04, f40 + 2.0 * f22 + f04);
+        for k in 0..LANES {
+            let d = [x[0][k] - self.centre[0], x[1][k] - self.centre[1], x[2][k] - self.centre[2]];
+            let u = d[0] * self.u[0] + d[1] * self.u[1] + d[2] * self.u[2];
+            let v = d[0] * self.v[0] + d[1] * self.v[1] + d[2] * self.v[2];
+            let rr = d[0] * d[0] + d[1] * d[1] + d[2] * d[2];
             let (uu, uv, vv) = (u * u, u * v, v * v);
-            let (m20, m02) = (self.second[0][k], self.second[1][k]);
-            let [t30, t21, t12, t03] =
-                [self.third[0][k], self.third[1][k], self.third[2][k], self.third[3][k]];
-            let [f40, f31, f22, f13, f04] = [
-                self.fourth[0][k],
-                self.fourth[1][k],
-                self.fourth[2][k],
-                self.fourth[3][k],
-                self.fourth[4][k],
-            ];
-            let second = 1.5 * (uu * m20 + vv * m02) - 0.5 * r_sq * (m20 + m02);
+            let second = 1.5 * (uu * m20 + vv * m02) - 0.5 * rr * m;
             let third = 2.5 * (u * (uu * t30 + 3.0 * vv * t12) + v * (3.0 * uu * t21 + vv * t03))
-                - 1.5 * r_sq * (u * (t30 + t12) + v * (t21 + t03));
+                - 1.5 * rr * (u * t3 + v * t0);
             let fourth = 4.375
                 * (uu * uu * f40 + 4.0 * uv * (uu * f31 + vv * f13) + 6.0 * uu * vv * f22 + vv * vv * f04)
-                - 3.75 * r_sq * (uu * (f40 + f22) + 2.0 * uv * (f31 + f13) + vv * (f22 + f04))
-                + 0.375 * r_sq * r_sq * (f40 + 2.0 * f22 + f04);
-            let (i2, i1) = (1.0 / r_sq, 1.0 / r_sq.sqrt());
+                - 3.75 * rr * (uu * f4 + uv * f3 + vv * f0)
+                + 0.375 * rr * rr * f;
+            let i1 = 1.0 / rr.sqrt();
+            let i2 = i1 * i1;
             let i4 = i2 * i2;
-            let sum = 1.0 + i4 * (second + i2 * (third + i2 * fourth));
-            *value = if r_sq < self.far_sq[k] { f64::NAN } else { self.area[k] * i1 * sum };
+            out[k] = self.area * i1 * (1.0 + i4 * (second + i2 * (third + i2 * fourth)));
+            r_sq[k] = rr;
         }
     }
 }
@@ -118,60 +114,4 @@ fn principal_axes(tri: &Triangle) -> [Vec3; 2] {
     }
     let (sin, cos) = (0.5 * (2.0 * xy).atan2(xx - yy)).sin_cos();
     [e * cos + f * sin, f * cos - e * sin]
-}
-
-/// The moments of a set of panels.
-#[derive(Clone, Debug)]
-pub struct Moments {
-    blocks: Vec<Block>,
-    n: usize,
-}
-
-impl Moments {
-    /// Moments of `panels`, in their order.
-    pub fn build(panels: &[Triangle]) -> Self {
-        let blocks = panels
-            .chunks(LANES)
-            .map(|chunk| {
-                let mut block = Block::EMPTY;
-                chunk.iter().enumerate().for_each(|(k, tri)| block.set(k, tri));
-                block
-            })
-            .collect();
-        Moments { blocks, n: panels.len() }
-    }
-
-    /// Length that an output of [`Moments::potentials`] must have: the count of panels, rounded up.
-    pub fn padded(&self) -> usize {
-        self.blocks.len() * LANES
-    }
-
-    /// Writes `∫dS/r` of every panel as seen from `x` [m]; not-a-number for panels to which `x` is
-    /// nearer than [`FAR_IN_EDGES`] longest edges.
-    ///
-    /// # Panics
-    /// If `out` is not of length [`Moments::padded`].
-    pub fn potentials(&self, x: &Vec3, out: &mut [f64]) {
-        assert_eq!(out.len(), self.padded(), "output length");
-        pulp::Arch::new().dispatch(Job { blocks: &self.blocks, x: [x.x, x.y, x.z], out });
-        out[self.n..].fill(0.0);
-    }
-}
-
-struct Job<'a> {
-    blocks: &'a [Block],
-    x: [f64; 3],
-    out: &'a mut [f64],
-}
-
-impl pulp::WithSimd for Job<'_> {
-    type Output = ();
-
-    #[inline(always)]
-    fn with_simd<S: pulp::Simd>(self, _simd: S) {
-        let (chunks, _) = self.out.as_chunks_mut::<LANES>();
-        for (block, out) in self.blocks.iter().zip(chunks) {
-            block.potentials(&self.x, out);
-        }
-    }
 }

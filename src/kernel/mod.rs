@@ -15,7 +15,9 @@
 //! assert!((v - 2.0 * 1.0_f64.asinh()).abs() < 1e-15);
 //! ```
 
+pub mod batch;
 pub mod far;
+mod lanes;
 pub mod point;
 pub mod rules;
 pub mod segment;

@@ -115,6 +115,11 @@ impl Prepared {
         }
     }
 
+    /// Outward normals in the plane and lengths [m] of the edges; edge `k` runs from corner `k`.
+    pub(super) fn edges(&self) -> ([Vec3; 3], [f64; 3]) {
+        (self.m, self.l)
+    }
+
     fn form(&self, x: &Vec3) -> Form {
         let distance_sq = (x - self.centroid).norm_squared();
         if (FAR_IN_EDGES * self.longest).powi(2) < distance_sq {

@@ -1,66 +1,97 @@
-//! Panels as seen from a point: far ones by moments, near ones by the closed form.
+//! Panels and their images as seen from many points.
 
 use crate::base::Plane;
 use crate::base::Vec3;
-use crate::kernel::far::Moments;
-use crate::kernel::triangle::Prepared;
+use crate::base::threads;
+use crate::kernel::batch::Points;
+use crate::kernel::batch::Source;
 use crate::panel::Panels;
 
 /// All panels, ready to be summed.
 #[derive(Clone, Debug)]
 pub struct Sources {
-    moments: Moments,
-    near: Vec<Prepared>,
+    panels: Vec<Source>,
     plane: Option<Plane>,
 }
+
+/// Points with their mirror points at the earth plane.
+///
+/// `|x − y'| = |x' − y|` for mirror points, so the image of a panel is the panel seen from `x` mirrored.
+#[derive(Clone, Debug)]
+pub(super) struct Targets {
+    direct: Points,
+    mirrored: Option<Points>,
+}
+
+impl Targets {
+    pub(super) fn new(points: &[Vec3], plane: Option<&Plane>) -> Self {
+        let mirrored = plane.map(|plane| Points::new(points.iter().map(|x| plane.mirror(x))));
+        Targets { direct: Points::new(points.iter().copied()), mirrored }
+    }
+
+    /// Length of the work space of [`Sources::column`].
+    pub(super) fn padded(&self) -> usize {
+        self.direct.padded()
+    }
+}
+
+/// Points treated at a time: their coordinates and sums stay in the nearest cache.
+const BLOCK: usize = 512;
 
 impl Sources {
     /// Prepares the moments and edges of all panels.
     pub fn build(panels: &Panels) -> Self {
-        Sources {
-            moments: Moments::build(&panels.triangles),
-            near: panels.triangles.iter().map(Prepared::new).collect(),
-            plane: panels.plane,
+        Sources { panels: panels.triangles.iter().map(Source::new).collect(), plane: panels.plane }
+    }
+
+    /// The earth plane.
+    pub(super) fn plane(&self) -> Option<&Plane> {
+        self.plane.as_ref()
+    }
+
+    /// Writes `∫dS/r` of panel `p`, its image subtracted, as seen from all targets [m].
+    pub(super) fn column(&self, p: usize, targets: &Targets, out: &mut [f64], scratch: &mut [f64]) {
+        self.panels[p].potentials(&targets.direct, out);
+        if let Some(mirrored) = &targets.mirrored {
+            self.panels[p].potentials(mirrored, scratch);
+            out.iter_mut().zip(scratch).for_each(|(out, image)| *out -= *image);
         }
     }
 
-    /// Length of the work space for [`Sources::add_potentials`].
-    pub fn scratch(&self) -> Vec<f64> {
-        vec![0.0; self.moments.padded()]
-    }
-
-    /// Adds `weight · ∫dS/r` of every panel as seen from `x` to `out`, its image at the earth plane
-    /// subtracted [m].
+    /// `sums[d][k] = Σ_p densities[d][p] ∫_p dS/r` at point `k`, images subtracted [m × unit of density].
     ///
-    /// `|x − y'| = |x' − y|` for mirror points, so the image is the panel seen from `x` mirrored.
-    pub fn add_potentials(&self, x: &Vec3, weight: f64, out: &mut [f64], scratch: &mut [f64]) {
-        self.add_direct(x, weight, out, scratch);
-        if let Some(plane) = &self.plane {
-            self.add_direct(&plane.mirror(x), -weight, out, scratch);
-        }
+    /// In parallel over blocks of points; every sum runs over the panels in their order.
+    pub fn potentials(&self, points: &[Vec3], densities: &[Vec<f64>]) -> Vec<Vec<f64>> {
+        let blocks: Vec<&[Vec3]> = points.chunks(BLOCK).collect();
+        let by_block: Vec<Vec<Vec<f64>>> = threads::map(blocks.len(), |b| {
+            let targets = Targets::new(blocks[b], self.plane());
+            let (mut seen, mut scratch) = (vec![0.0; targets.padded()], vec![0.0; targets.padded()]);
+            let mut sums = vec![vec![0.0; targets.padded()]; densities.len()];
+            for p in 0..self.panels.len() {
+                self.column(p, &targets, &mut seen, &mut scratch);
+                for (sum, density) in sums.iter_mut().zip(densities) {
+                    sum.iter_mut().zip(&seen).for_each(|(sum, seen)| *sum += density[p] * seen);
+                }
+            }
+            sums.iter_mut().for_each(|sum| sum.truncate(blocks[b].len()));
+            sums
+        });
+        (0..densities.len())
+            .map(|d| by_block.iter().flat_map(|block| block[d].iter().copied()).collect())
+            .collect()
     }
 
-    fn add_direct(&self, x: &Vec3, weight: f64, out: &mut [f64], scratch: &mut [f64]) {
-        self.moments.potentials(x, scratch);
-        for ((out, far), near) in out.iter_mut().zip(scratch).zip(&self.near) {
-            *out += weight * if far.is_nan() { near.potential(x) } else { *far };
-        }
-    }
-
-    /// Gradient at `x` of `Σ_p density_p ∫_p dS/r`, image subtracted, for every set of densities
-    /// [unit of density].
-    pub fn gradients(&self, x: &Vec3, densities: &[&[f64]]) -> Vec<Vec3> {
-        let mut sums = vec![Vec3::zeros(); densities.len()];
-        for (p, near) in self.near.iter().enumerate() {
-            let mut g = near.gradient(x);
+    /// Gradient at `x` of `Σ_p density_p ∫_p dS/r`, image subtracted [unit of density].
+    pub fn gradient(&self, x: &Vec3, density: &[f64]) -> Vec3 {
+        let mut sum = Vec3::zeros();
+        for (source, density) in self.panels.iter().zip(density) {
+            let mut g = source.exact().gradient(x);
             if let Some(plane) = &self.plane {
-                let mirrored = near.gradient(&plane.mirror(x));
+                let mirrored = source.exact().gradient(&plane.mirror(x));
                 g -= mirrored - plane.facing * (2.0 * mirrored.dot(&plane.facing));
             }
-            for (sum, density) in sums.iter_mut().zip(densities) {
-                *sum += g * density[p];
-            }
+            sum += g * *density;
         }
-        sums
+        sum
     }
 }

@@ -83,7 +83,7 @@ fn magnitude(solved: &Solved, sources: &Sources, v: &[f64]) -> Vec<f64> {
         // The panel's own normal field is ±s/2, in the first term; the height of its centroid over its
         // own plane is only rounding.
         let own = triangle::gradient(tri, &tri.centroid()) * field[p];
-        let gradient = sources.gradients(&tri.centroid(), &[&field])[0] - own;
+        let gradient = sources.gradient(&tri.centroid(), &field) - own;
         0.5 * field[p].abs() + (gradient.dot(&tri.normal()) / (4.0 * PI)).abs()
     })
 }

@@ -69,15 +69,13 @@ impl Map {
 pub fn look(solved: &Solved, sources: &Sources, map: &Map, v: &[f64], points: &[Vec3]) -> Vec<Seen> {
     let density = field::normal_field(solved, v);
     let none = Seen { potential: 0.0, field: Vec3::zeros() };
+    let potentials = sources.potentials(points, std::slice::from_ref(&density));
     threads::map(points.len(), |k| match map.medium(&points[k]) {
         Medium::BehindEarth => none,
         Medium::Metal(body) => Seen { potential: body_potential(&solved.panels, body, v), ..none },
         Medium::Surroundings => {
-            let (mut row, mut scratch) = (vec![0.0; density.len()], sources.scratch());
-            sources.add_potentials(&points[k], 1.0, &mut row, &mut scratch);
-            let potential: f64 = row.iter().zip(&density).map(|(g, s)| g * s).sum();
-            let gradient = sources.gradients(&points[k], &[&density])[0];
-            Seen { potential: potential / (4.0 * PI), field: -gradient / (4.0 * PI) }
+            let gradient = sources.gradient(&points[k], &density);
+            Seen { potential: potentials[0][k] / (4.0 * PI), field: -gradient / (4.0 * PI) }
         }
     })
 }

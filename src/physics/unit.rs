@@ -1,6 +1,6 @@
 //! Unit charges and what they miss.
 
-use crate::base::threads;
+use crate::base::Vec3;
 use crate::kernel::rules;
 use crate::operator::Sources;
 use crate::operator::dense;
@@ -44,19 +44,14 @@ pub fn solve(panels: &Panels, sources: &Sources) -> Result<UnitCharges, SolveErr
 
 /// Evaluates all unit solutions at the six points of every panel; one pass over all pairs.
 pub fn residuals(panels: &Panels, sources: &Sources, charges: &UnitCharges) -> Residuals {
-    let n_rows = panels.n_rows;
-    let by_panel: Vec<Vec<[f64; 6]>> = threads::map(panels.len(), |p| {
-        let (mut scratch, mut row) = (sources.scratch(), vec![0.0; panels.len()]);
-        let mut found = vec![[0.0; 6]; n_rows];
-        for (q, (w, _)) in rules::SIX.iter().enumerate() {
-            row.fill(0.0);
-            sources.add_potentials(&panels.triangles[p].at(*w), 1.0, &mut row, &mut scratch);
-            for (j, density) in charges.density.iter().enumerate() {
-                let sum: f64 = row.iter().zip(density).map(|(g, s)| g * s).sum();
-                found[j][q] = panels.unit_potential(p, j) - sum / (4.0 * PI);
-            }
-        }
-        found
-    });
-    Residuals { at: (0..n_rows).map(|j| by_panel.iter().map(|row| row[j]).collect()).collect() }
+    let points: Vec<Vec3> =
+        panels.triangles.iter().flat_map(|tri| rules::SIX.map(|(w, _)| tri.at(w))).collect();
+    let sums = sources.potentials(&points, &charges.density);
+    let of_row = |(j, sum): (usize, &Vec<f64>)| {
+        let (groups, _) = sum.as_chunks::<6>();
+        let of_panel =
+            |(p, seen): (usize, &[f64; 6])| seen.map(|v| panels.unit_potential(p, j) - v / (4.0 * PI));
+        groups.iter().enumerate().map(of_panel).collect()
+    };
+    Residuals { at: sums.iter().enumerate().map(of_row).collect() }
 }

@@ -50,13 +50,10 @@ fn par() -> Par {
 
 /// Factors the matrix in its own memory.
 ///
-/// The rows of [`Dense`] are the columns of the transposed matrix, which is what is factored: the
-/// solution then solves with the transposed factors.
-///
 /// # Errors
 /// [`SolveError::Pivot`] for a singular or non-finite matrix: the library itself gives no verdict.
 pub fn factor(matrix: Dense) -> Result<Factors, SolveError> {
-    let Dense { n, rows: mut lu } = matrix;
+    let Dense { n, columns: mut lu } = matrix;
     let (mut forward, mut inverse) = (vec![0_usize; n], vec![0_usize; n]);
     let scratch = factor::lu_in_place_scratch::<usize, f64>(n, n, par(), faer::prelude::default());
     let mut buffer = MemBuffer::try_new(scratch).map_err(|_| SolveError::Workspace { n })?;
@@ -96,11 +93,11 @@ pub fn solve(factors: &Factors, b: &mut [f64]) -> Result<(), SolveError> {
     }
     assert_eq!(b.len() % n, 0, "right sides are whole columns");
     let columns = b.len() / n;
-    let scratch = solve::solve_transpose_in_place_scratch::<usize, f64>(n, columns, par());
+    let scratch = solve::solve_in_place_scratch::<usize, f64>(n, columns, par());
     let mut buffer = MemBuffer::try_new(scratch).map_err(|_| SolveError::Workspace { n })?;
     let lu = MatRef::from_column_major_slice(&factors.lu, n, n);
     let perm = PermRef::new_checked(&factors.forward, &factors.inverse, n);
     let b = MatMut::from_column_major_slice_mut(b, n, columns);
-    solve::solve_transpose_in_place(lu, lu, perm, b, par(), MemStack::new(&mut buffer));
+    solve::solve_in_place(lu, lu, perm, b, par(), MemStack::new(&mut buffer));
     Ok(())
 }

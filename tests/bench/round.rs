@@ -33,7 +33,8 @@ fn three_cubes(most: usize) -> Panels {
     let piece = |k: u32, f: usize| Piece {
         body: k,
         facet: f as u32,
-        corners: bodies[k as usize].surface.welded.facets[f].map(|p| bodies[k as usize].surface.welded.points[p as usize]),
+        corners: bodies[k as usize].surface.welded.facets[f]
+            .map(|p| bodies[k as usize].surface.welded.points[p as usize]),
         bary: [[1.0, 0.0, 0.0], [0.0, 1.0, 0.0], [0.0, 0.0, 1.0]],
         net: Net::Row(k),
     };
@@ -46,7 +47,9 @@ fn three_cubes(most: usize) -> Panels {
 }
 
 fn cube(name: &str, shift: f64) -> Body {
-    let points = (0..8).map(|k| Vec3::new(f64::from(k & 1) + shift, f64::from(k >> 1 & 1), f64::from(k >> 2))).collect();
+    let points = (0..8)
+        .map(|k| Vec3::new(f64::from(k & 1) + shift, f64::from(k >> 1 & 1), f64::from(k >> 2)))
+        .collect();
     let faces = [[0, 2, 3, 1], [4, 5, 7, 6], [0, 1, 5, 4], [2, 6, 7, 3], [0, 4, 6, 2], [1, 3, 7, 5]];
     let facets = faces.iter().flat_map(|&[a, b, c, d]| [[a, b, c], [a, c, d]]).collect();
     let welded = Welded { points, facets };
