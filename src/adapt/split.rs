@@ -1,7 +1,8 @@
 //! Bisection of panels at the middle of one edge; neighbours need not follow.
 
-use crate::base::Vec3;
 use crate::geom::Triangle;
+use crate::panel;
+use crate::panel::Origin;
 use crate::panel::Panels;
 
 /// Panels with each `cuts[k] = (panel, edge)` cut at the middle of its edge; edge `e` runs from corner
@@ -12,39 +13,24 @@ use crate::panel::Panels;
 pub fn bisect(panels: &Panels, cuts: &[(usize, usize)]) -> Panels {
     assert!(cuts.windows(2).all(|pair| pair[0].0 < pair[1].0), "cuts in rising order of panels");
     let mut next = cuts.iter().peekable();
-    let mut out = Panels {
-        triangles: Vec::with_capacity(panels.len() + cuts.len()),
-        net: Vec::new(),
-        body: Vec::new(),
-        facet: Vec::new(),
-        bary: Vec::new(),
-        ..panels.clone()
-    };
+    let mut origins: Vec<Origin> = Vec::with_capacity(panels.len() + cuts.len());
     for p in 0..panels.len() {
-        let children = match next.next_if(|cut| cut.0 == p) {
-            Some((_, edge)) => halves(&panels.triangles[p], &panels.bary[p], *edge).to_vec(),
-            None => vec![(panels.triangles[p], panels.bary[p])],
-        };
-        for (triangle, bary) in children {
-            out.triangles.push(triangle);
-            out.bary.push(bary);
-            out.net.push(panels.net[p]);
-            out.body.push(panels.body[p]);
-            out.facet.push(panels.facet[p]);
+        let origin = panels.origin(p);
+        match next.next_if(|cut| cut.0 == p) {
+            Some((_, edge)) => origins.extend(halves(&origin, *edge)),
+            None => origins.push(origin),
         }
     }
-    out
+    panel::from_origins(panels.assembly.clone(), panels.plane, &origins)
 }
 
-type Piece = (Triangle, [[f64; 3]; 3]);
-
-fn halves(tri: &Triangle, bary: &[[f64; 3]; 3], edge: usize) -> [Piece; 2] {
+fn halves(origin: &Origin, edge: usize) -> [Origin; 2] {
     let (a, b, c) = (edge, (edge + 1) % 3, (edge + 2) % 3);
-    let middle: Vec3 = (tri.corners[a] + tri.corners[b]) * 0.5;
-    let mid_bary = [0, 1, 2].map(|k| 0.5 * (bary[a][k] + bary[b][k]));
+    let bary = &origin.bary;
+    let middle = [0, 1, 2].map(|k| 0.5 * (bary[a][k] + bary[b][k]));
     [
-        (Triangle::new([tri.corners[a], middle, tri.corners[c]]), [bary[a], mid_bary, bary[c]]),
-        (Triangle::new([middle, tri.corners[b], tri.corners[c]]), [mid_bary, bary[b], bary[c]]),
+        Origin { bary: [bary[a], middle, bary[c]], ..*origin },
+        Origin { bary: [middle, bary[b], bary[c]], ..*origin },
     ]
 }
 

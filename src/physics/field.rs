@@ -126,7 +126,7 @@ fn peak(solved: &Solved, body: usize, held: &[usize], strength: &[f64], charge_b
     let wide = fit(solved, held, strength, centre, PATCHES[1]);
     let [k1, k2] = small.curvature;
     // Area that the drawn surface gains over its facet, with the part of the slopes, per area.
-    let lift = 2.0 * solved.offsets[centre].abs() * (k1.abs() + k2.abs());
+    let lift = 2.0 * solved.panels.offset[centre].abs() * (k1.abs() + k2.abs());
     let bar = (small.value - wide.value).abs() + 2.0 * small.scatter + small.value * (charge_bar + lift);
     Peak {
         body,

@@ -41,11 +41,9 @@ pub struct Solved {
     pub residuals: Residuals,
     /// Weighted gradients of what they miss.
     pub estimate: Estimate,
-    /// Mean height of the rebuilt surface over each panel [m].
-    pub offsets: Vec<f64>,
-    /// Of the flat panels.
-    pub flat: Capacitance,
-    /// With the faceting correction: the result [F].
+    /// Before and after the residual correction.
+    pub capacitance: Capacitance,
+    /// After the correction: the result [F].
     pub matrix: Matrix,
 }
 
@@ -75,18 +73,10 @@ pub fn solve(panels: Panels, eps_r: f64) -> Result<Solved, SolveError> {
     let sources = Sources::build(&panels);
     let charges = unit::solve(&panels, &sources)?;
     let residuals = unit::residuals(&panels, &sources, &charges);
-    let flat = capacitance::corrected(&panels, &charges, &residuals, eps_r);
+    let capacitance = capacitance::corrected(&panels, &charges, &residuals, eps_r);
     let estimate = estimate::estimate(&panels, &residuals, eps_r);
-    let offsets = faceting::offsets(&panels);
-    let mut solved =
-        Solved { matrix: flat.corrected.clone(), panels, eps_r, charges, residuals, estimate, offsets, flat };
-    for i in 0..solved.n_rows() {
-        for j in 0..solved.n_rows() {
-            solved.matrix[i][j] +=
-                solved.faceting(&unit_weight(i, solved.n_rows()), &unit_weight(j, solved.n_rows()));
-        }
-    }
-    Ok(solved)
+    let matrix = capacitance.corrected.clone();
+    Ok(Solved { panels, eps_r, charges, residuals, estimate, capacitance, matrix })
 }
 
 /// Weight 1 on row `i`, 0 elsewhere.
@@ -102,7 +92,7 @@ impl Solved {
 
     /// Bar of the combination `uᵀ C v`, by its own weights [F × units of u and v].
     pub fn bar(&self, u: &[f64], v: &[f64]) -> Bar {
-        let (_, faceting) = faceting::change(&self.panels, &self.offsets, &self.charges, self.eps_r, [u, v]);
+        let (_, faceting) = faceting::change(&self.panels, &self.charges, self.eps_r, [u, v]);
         let size = |i: usize, j: usize| (u[i] * self.matrix[i][j] * v[j]).abs();
         let magnitude: f64 = (0..u.len()).map(|i| (0..v.len()).map(|j| size(i, j)).sum::<f64>()).sum();
         Bar {
@@ -114,7 +104,7 @@ impl Solved {
 
     /// First-order share of the facets in `uᵀ C v`: rebuilt minus flat [F × units of u and v].
     pub fn faceting(&self, u: &[f64], v: &[f64]) -> f64 {
-        faceting::change(&self.panels, &self.offsets, &self.charges, self.eps_r, [u, v]).0
+        faceting::change(&self.panels, &self.charges, self.eps_r, [u, v]).0
     }
 
     /// Bars of the matrix entries and of the row sums [F].

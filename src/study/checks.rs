@@ -51,7 +51,9 @@ pub(super) fn checks(
         ),
         check(
             "charge against energy functional, over C_ii [1]",
-            worst(&mut (0..n).map(|i| (solved.flat.raw[i][i] - solved.flat.corrected[i][i]).abs() / c[i][i])),
+            worst(&mut (0..n).map(|i| {
+                (solved.capacitance.raw[i][i] - solved.capacitance.corrected[i][i]).abs() / c[i][i]
+            })),
             CORRECTION + CORRECTION_IN_BARS * most_bar,
         ),
         check("mean potential error between collocation points [V per V]", mean_residual(solved), RESIDUAL),
@@ -87,7 +89,7 @@ fn check(name: &str, value: f64, limit: f64) -> Check {
 }
 
 fn asymmetry(solved: &Solved, i: usize, j: usize) -> f64 {
-    let (raw, c) = (&solved.flat.raw, &solved.matrix);
+    let (raw, c) = (&solved.capacitance.raw, &solved.matrix);
     (raw[i][j] - raw[j][i]).abs() / (c[i][i] * c[j][j]).abs().sqrt()
 }
 
