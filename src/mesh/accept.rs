@@ -115,7 +115,7 @@ fn seal(welded: Welded, sheet: bool) -> Surface {
         .iter()
         .map(|corners| [Triangle::new(corners.map(|p| welded.points[p as usize])).normal(); 3])
         .collect();
-    Surface { welded, sheet, normals, creases: Vec::new() }
+    Surface { welded, sheet, normals, creases: Vec::new(), rims_as_drawn: true }
 }
 
 fn check(whole: &Welded, sheet: bool, name: &str, diagonal: f64) -> Vec<Finding> {

@@ -73,6 +73,8 @@ pub struct Surface {
     pub normals: Vec<[Vec3; 3]>,
     /// Edges where smooth patches end, and rims of sheets.
     pub creases: Vec<Crease>,
+    /// The straight sides of a rim are the shape, not chords of a round one.
+    pub rims_as_drawn: bool,
 }
 
 /// An edge at which the surface is not smooth.

@@ -4,6 +4,7 @@ use crate::base::Plane;
 use crate::base::Vec3;
 use crate::base::threads;
 use crate::geom::Triangle;
+use crate::geom::distance;
 use crate::geom::winding;
 use crate::geom::winding::Winding;
 use crate::operator::Sources;
@@ -65,13 +66,19 @@ impl Map {
 /// Potential and field at `points` with row potentials `v`; in metal its own potential and no field,
 /// behind the earth plane nothing.
 ///
-/// Exact to the charges: their error shows within about one panel length of a surface.
+/// Exact to the charges: their error shows within about one panel length of a surface.  A point closer
+/// to a panel of a solid than the rebuilt surface is to its facet counts as on the surface: it has the
+/// potential of the body and the normal field of the panel.
 pub fn look(solved: &Solved, sources: &Sources, map: &Map, v: &[f64], points: &[Vec3]) -> Vec<Seen> {
     let density = field::normal_field(solved, v);
     let none = Seen { potential: 0.0, field: Vec3::zeros() };
     let potentials = sources.potentials(points, std::slice::from_ref(&density));
     threads::map(points.len(), |k| match map.medium(&points[k]) {
         Medium::BehindEarth => none,
+        _ if let Some(p) = surface_panel(&solved.panels, &points[k]) => Seen {
+            potential: body_potential(&solved.panels, solved.panels.body[p] as usize, v),
+            field: solved.panels.triangles[p].normal() * density[p],
+        },
         Medium::Metal(body) => Seen { potential: body_potential(&solved.panels, body, v), ..none },
         Medium::Surroundings => {
             let gradient = sources.gradient(&points[k], &density);
@@ -79,6 +86,23 @@ pub fn look(solved: &Solved, sources: &Sources, map: &Map, v: &[f64], points: &[
         }
     })
 }
+
+/// Height over a panel within which a point counts as on the surface, in offsets of the panel [1].
+const ON_SURFACE: f64 = 3.0;
+
+/// The panel of a solid on whose rebuilt surface `x` lies.
+fn surface_panel(panels: &Panels, x: &Vec3) -> Option<usize> {
+    let distance = |p: usize| (distance::point_of_triangle(&panels.triangles[p], x) - x).norm();
+    let solid = |p: &usize| !panels.assembly.bodies[panels.body[*p] as usize].surface.sheet;
+    let near = (0..panels.len()).filter(solid).filter(|p| {
+        let reach = ON_SURFACE * panels.offset[*p].abs() + ROUNDING * panels.triangles[*p].longest_edge();
+        distance(*p) <= reach
+    });
+    near.min_by(|a, b| distance(*a).total_cmp(&distance(*b)))
+}
+
+/// Distance from a panel that is only rounding, in longest edges [1].
+const ROUNDING: f64 = 1e-6;
 
 fn body_potential(panels: &Panels, body: usize, v: &[f64]) -> f64 {
     let row = panels.assembly.rows.iter().position(|row| row.bodies.contains(&(body as u32)));

@@ -12,6 +12,7 @@ pub mod estimate;
 pub mod faceting;
 pub mod field;
 pub mod look;
+pub mod rim;
 pub mod solved;
 pub mod unit;
 

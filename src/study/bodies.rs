@@ -160,5 +160,6 @@ fn smoothed(surface: Surface, electrode: &Electrode, findings: &mut Vec<Finding>
             place: Some(at),
         });
     }
-    Surface { normals, creases, ..surface }
+    let rims_as_drawn = electrode.surface == SurfaceKind::AsDrawn;
+    Surface { normals, creases, rims_as_drawn, ..surface }
 }

@@ -54,7 +54,13 @@ fn cube(name: &str, shift: f64) -> Body {
     let facets = faces.iter().flat_map(|&[a, b, c, d]| [[a, b, c], [a, c, d]]).collect();
     let welded = Welded { points, facets };
     let smooth = smooth::recover(&welded, smooth::CREASE_ANGLE);
-    let surface = Surface { welded, sheet: false, normals: smooth.normals, creases: smooth.creases };
+    let surface = Surface {
+        welded,
+        sheet: false,
+        normals: smooth.normals,
+        creases: smooth.creases,
+        rims_as_drawn: false,
+    };
     Body { name: name.to_owned(), surface }
 }
 

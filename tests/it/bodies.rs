@@ -105,7 +105,7 @@ pub(crate) fn surface(facets: &Facets, sheet: bool) -> Surface {
         }));
     }
     let normals = triangles(facets).iter().map(|t| [t.normal(); 3]).collect();
-    Surface { welded, sheet, normals, creases: Vec::new() }
+    Surface { welded, sheet, normals, creases: Vec::new(), rims_as_drawn: true }
 }
 
 pub(crate) fn solid(name: &str, facets: &Facets) -> Body {
