@@ -8,6 +8,7 @@ mod bodies;
 mod checks;
 mod inspect;
 mod prove;
+mod prove_shapes;
 mod record;
 mod run;
 mod state;
