@@ -11,12 +11,12 @@ use crate::cli::records;
 use crate::cli::show::Show;
 use crate::record::FileHash;
 use crate::record::RecordError;
+use crate::record::sha256;
 use crate::record::store;
 use crate::report;
 use crate::report::Printing;
 use crate::report::Targets;
 use crate::report::answers;
-use crate::report::deliver::sha256;
 use crate::study;
 
 /// Solves the case, prints the answers and writes the files.

@@ -3,23 +3,8 @@
 use super::Origin;
 use crate::base::Vec3;
 use crate::geom::Triangle;
+use crate::kernel::rules;
 use crate::mesh::Assembly;
-
-/// Weights of a rule of degree four on the triangle, for the mean of a cubic: Dunavant (1985), table II.
-const MEAN: [([f64; 3], f64); 6] = {
-    const A: f64 = 0.445_948_490_915_965;
-    const B: f64 = 0.091_576_213_509_771;
-    const WA: f64 = 0.223_381_589_678_011;
-    const WB: f64 = 1.0 / 3.0 - WA;
-    [
-        ([1.0 - 2.0 * A, A, A], WA),
-        ([A, 1.0 - 2.0 * A, A], WA),
-        ([A, A, 1.0 - 2.0 * A], WA),
-        ([1.0 - 2.0 * B, B, B], WB),
-        ([B, 1.0 - 2.0 * B, B], WB),
-        ([B, B, 1.0 - 2.0 * B], WB),
-    ]
-};
 
 /// The panel of an origin, and its offset from the facet [m].
 ///
@@ -63,5 +48,6 @@ fn mean_height(corners: &[Vec3; 3], normals: &[Vec3; 3], n: &Vec3, bary: &[[f64;
         sum
     };
     let point = |w: &[f64; 3]| [0, 1, 2].map(|k| (0..3).map(|c| w[c] * bary[c][k]).sum::<f64>());
-    MEAN.iter().map(|(w, weight)| weight * height(point(w))).sum()
+    // The six-point rule integrates a cubic exactly.
+    rules::SIX.iter().map(|(w, weight)| weight * height(point(w))).sum()
 }

@@ -6,7 +6,7 @@ use crate::panel::Panels;
 use crate::physics::unit::Residuals;
 use crate::physics::unit::UnitCharges;
 
-/// A square matrix, row by row.
+/// A square matrix, row by row [unit where it stands].
 pub type Matrix = Vec<Vec<f64>>;
 
 /// Charges of the flat panels, before and after the correction.

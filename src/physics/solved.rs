@@ -62,9 +62,9 @@ pub struct Solved {
 pub struct Bar {
     /// Of the flat panels' solution [F × units of u and v].
     pub discretisation: f64,
-    /// Of the faceting correction.
+    /// Of the faceting correction [F × units of u and v].
     pub faceting: f64,
-    /// Of rounding.
+    /// Of rounding [F × units of u and v].
     pub solver: f64,
 }
 

@@ -5,9 +5,11 @@
 //! Symbols: as in the crate's table; matrices are nested row by row in the order of `electrodes`.
 
 pub mod cautions;
+mod hash;
 pub mod store;
 
 pub use cautions::CAUTIONS;
+pub use hash::sha256;
 pub use store::RecordError;
 
 use serde::Deserialize;

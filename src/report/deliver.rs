@@ -3,6 +3,7 @@
 use crate::record::FileHash;
 use crate::record::Record;
 use crate::record::SurfaceTable;
+use crate::record::sha256;
 use crate::record::store;
 use crate::report::Printing;
 use crate::report::ReportError;
@@ -11,8 +12,6 @@ use crate::report::csv;
 use crate::report::file;
 use crate::report::netlist;
 use crate::report::vtu;
-use sha2::Digest;
-use sha2::Sha256;
 use std::io;
 use std::path::Path;
 use std::path::PathBuf;
@@ -69,11 +68,6 @@ pub fn deliver(
         file::write_whole(path, bytes)?;
     }
     Ok(files.into_iter().map(|(path, _)| path).collect())
-}
-
-/// SHA-256 of some bytes, hexadecimal.
-pub fn sha256(bytes: &[u8]) -> String {
-    Sha256::digest(bytes).iter().map(|byte| format!("{byte:02x}")).collect()
 }
 
 /// Path of the long form of the matrices: `_long` before the ending.

@@ -8,14 +8,12 @@ use crate::case::Electrode;
 use crate::case::Shapes;
 use crate::case::Shell;
 use crate::case::SurfaceKind;
-use crate::geom::Triangle;
-use crate::geom::winding;
 use crate::mesh::Body;
 use crate::mesh::Surface;
-use crate::mesh::Welded;
 use crate::mesh::accept;
 use crate::mesh::place;
 use crate::mesh::place::Placing;
+use crate::mesh::repair;
 use crate::mesh::shells;
 use crate::mesh::size;
 use crate::mesh::smooth;
@@ -23,9 +21,9 @@ use crate::mesh::smooth::Smooth;
 use crate::mesh::stl;
 use crate::mesh::weld;
 
-/// Facets of one file in metres, where the drawing has them.
+/// Facets of one file, solid by solid, in the unit of the file.
 pub(super) struct Read {
-    pub(super) facets: Vec<[Vec3; 3]>,
+    pub(super) solids: Vec<Vec<[Vec3; 3]>>,
     pub(super) findings: Vec<Finding>,
 }
 
@@ -39,8 +37,8 @@ pub(super) fn read_all(shapes: &Shapes) -> Result<Vec<Read>, Vec<Finding>> {
     for file in &shapes.files {
         match stl::parse(&file.bytes, &file.path) {
             Ok(soup) => {
-                let facets = soup.solids.into_iter().flat_map(|solid| solid.facets).collect();
-                read.push(Read { facets, findings: soup.findings });
+                let solids = soup.solids.into_iter().map(|solid| solid.facets).collect();
+                read.push(Read { solids, findings: soup.findings });
             }
             Err(error) => refused.push(refusal("stl", error.to_string())),
         }
@@ -78,13 +76,18 @@ pub(super) fn bodies(case: &Case, shapes: &Shapes) -> Result<(Vec<Body>, Vec<Fin
 }
 
 fn body(case: &Case, electrode: &Electrode, read: &[Read]) -> Result<(Body, Vec<Finding>), Vec<Finding>> {
-    let raw: Vec<[Vec3; 3]> = electrode.files.iter().flat_map(|k| read[*k].facets.iter().copied()).collect();
-    let chosen = match &electrode.shell {
-        None => raw,
-        Some(shell) => select(&raw, shell, case.length_unit, &electrode.name).map_err(|f| vec![f])?,
+    let solids = electrode.files.iter().flat_map(|k| &read[*k].solids);
+    let chosen: Vec<Vec<[Vec3; 3]>> = match &electrode.shell {
+        None => solids.cloned().collect(),
+        Some(shell) => {
+            let raw: Vec<[Vec3; 3]> = solids.flatten().copied().collect();
+            vec![select(&raw, shell, case.length_unit, electrode).map_err(|f| vec![f])?]
+        }
     };
-    let facets = place(&chosen, &placing(case, electrode));
-    let (surface, mut findings) = accept::body(&facets, electrode.sheet, &electrode.name)?;
+    let placing = placing(case, electrode);
+    let placed: Vec<Vec<[Vec3; 3]>> = chosen.iter().map(|facets| place(facets, &placing)).collect();
+    let slices: Vec<&[[Vec3; 3]]> = placed.iter().map(Vec::as_slice).collect();
+    let (surface, mut findings) = accept::body_of(&slices, electrode.sheet, &electrode.name)?;
     if let Some(drawn) = &electrode.size_check {
         let (lo, hi) = weld::bounds(&surface.welded.points);
         if let Some(finding) = size::size_check(&(hi - lo), drawn, &electrode.name) {
@@ -105,38 +108,30 @@ fn placing<'a>(case: &Case, electrode: &'a Electrode) -> Placing<'a> {
 }
 
 /// The facets of one shell of a file, in file units; the point it holds is given in metres.
-fn select(raw: &[[Vec3; 3]], shell: &Shell, unit: f64, name: &str) -> Result<Vec<[Vec3; 3]>, Finding> {
-    let found = shells::split(&weld::weld(raw, weld::WELD_REL_TOL));
-    let unfold =
-        |welded: &Welded| welded.facets.iter().map(|f| f.map(|k| welded.points[k as usize])).collect();
-    let text = match shell {
-        Shell::Index(k) => match found.get(*k) {
-            Some(welded) => return Ok(unfold(welded)),
-            None => format!(
-                "`{name}`: shell {k} is asked for, but the file has {} shells; an index from 0 to {} is wanted",
-                found.len(),
-                found.len().saturating_sub(1)
-            ),
-        },
-        Shell::Holding(x) => {
-            let x = x / unit;
-            let triangles = |welded: &Welded| -> Vec<Triangle> {
-                welded.facets.iter().map(|f| Triangle::new(f.map(|k| welded.points[k as usize]))).collect()
-            };
-            let size = |welded: &Welded| {
-                let (lo, hi) = weld::bounds(&welded.points);
-                (hi - lo).norm()
-            };
-            let holding = found.iter().filter(|welded| winding::holds(&triangles(welded), &x));
-            match holding.min_by(|a, b| size(a).total_cmp(&size(b))) {
-                Some(welded) => return Ok(unfold(welded)),
-                None => {
-                    format!("`{name}`: none of the {} shells of the file holds the point given", found.len())
-                }
-            }
-        }
+///
+/// Shells are told after the repairs, so that T-joints do not part them.
+fn select(
+    raw: &[[Vec3; 3]],
+    shell: &Shell,
+    unit: f64,
+    electrode: &Electrode,
+) -> Result<Vec<[Vec3; 3]>, Finding> {
+    let name = &electrode.name;
+    let (mended, _) = repair::repair(weld::weld(raw, weld::WELD_REL_TOL), electrode.sheet, name);
+    let found = shells::split(&mended);
+    let index = match shell {
+        Shell::Index(k) if *k < found.len() => Ok(*k),
+        Shell::Index(k) => Err(format!(
+            "`{name}`: shell {k} is asked for, but the file has {} shells; an index from 0 to {} is wanted",
+            found.len(),
+            found.len().saturating_sub(1)
+        )),
+        Shell::Holding(x) => shells::holding(&found, &(x / unit)).ok_or_else(|| {
+            format!("`{name}`: none of the {} shells of the file holds the point given", found.len())
+        }),
     };
-    Err(refusal("shell", text))
+    let welded = &found[index.map_err(|text| refusal("shell", text))?];
+    Ok(welded.facets.iter().map(|f| f.map(|k| welded.points[k as usize])).collect())
 }
 
 /// Fills normals and creases and tells the sharpest ridge that is taken for faceting.

@@ -64,7 +64,7 @@ pub(super) fn checks(
         ),
     ];
     found.extend(volume_checks(solved, earth_bars));
-    found.extend(cases.iter().map(|case| energy_check(case)));
+    found.extend(cases.iter().map(energy_check));
     found
 }
 
@@ -95,7 +95,7 @@ fn asymmetry(solved: &Solved, i: usize, j: usize) -> f64 {
 
 fn not_positive(c: &[Vec<f64>]) -> f64 {
     let m = DMatrix::from_fn(c.len(), c.len(), |i, j| c[i][j]);
-    m.symmetric_eigenvalues().iter().filter(|value| !(0.0 < **value)).count() as f64
+    m.symmetric_eigenvalues().iter().filter(|value| value.is_nan() || **value <= 0.0).count() as f64
 }
 
 fn mean_residual(solved: &Solved) -> f64 {

@@ -84,7 +84,7 @@ pub fn inspect_files(shapes: &Shapes) -> Inspection {
     let mut inspection = empty();
     for (file, read) in shapes.files.iter().zip(read) {
         inspection.findings.extend(read.findings);
-        let parts = shells::split(&weld::weld(&read.facets, weld::WELD_REL_TOL));
+        let parts = shells::split(&weld::weld(&read.solids.concat(), weld::WELD_REL_TOL));
         let many = 1 < parts.len();
         for (k, part) in parts.iter().enumerate() {
             let name = if many { format!("{} shell {k}", file.path) } else { file.path.clone() };

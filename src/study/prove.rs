@@ -39,7 +39,7 @@ pub struct ProveLine {
 }
 
 /// 4πε₀ [F/m], 10⁷/c² (exact before 2019, and 2e-10 from the value of CODATA 2022); not the program's own.
-const FOUR_PI_EPS0: f64 = 1.112_650_056e-10;
+const UNIT_BALL: f64 = 1.112_650_056e-10;
 
 /// Capacitance of a cube over 4πε₀ times its edge [1] (Helsing and Perfekt 2013).
 const CUBE: f64 = 0.660_678_154_099_57;
@@ -81,7 +81,7 @@ pub fn prove() -> Result<Vec<ProveLine>, StudyError> {
 fn sphere() -> Result<ProveLine, StudyError> {
     let solved = solved(vec![prove_shapes::ball(Vec3::zeros(), 1.0, ALONE)], false, None)?;
     let source = "Gauss's law: 4πε₀R";
-    Ok(entry("sphere, R = 1 m: C [F]", source, &solved, (0, 0), FOUR_PI_EPS0))
+    Ok(entry("sphere, R = 1 m: C [F]", source, &solved, (0, 0), UNIT_BALL))
 }
 
 /// Two balls of 1 m radius, 1 m apart: both kinds of entry, and the field between the facing poles.
@@ -89,7 +89,7 @@ fn two_spheres() -> Result<Vec<ProveLine>, StudyError> {
     let balls = [0.0, -3.0].map(|z| prove_shapes::ball(Vec3::new(0.0, 0.0, z), 1.0, PAIR));
     let solved = solved(balls.to_vec(), false, None)?;
     let source = "image series: Smythe, Static and Dynamic Electricity, ch. 5; Lekner 2011";
-    let [own, mutual] = equal_balls(3.0).map(|c| FOUR_PI_EPS0 * c);
+    let [own, mutual] = equal_balls(3.0).map(|c| UNIT_BALL * c);
     let sources = Sources::build(&solved.panels);
     let (bars, _) = solved.bars();
     let charge_bar = [0, 1].map(|row| bars[row][row].total() / solved.matrix[row][row]);
@@ -123,19 +123,19 @@ fn sphere_over_plane() -> Result<ProveLine, StudyError> {
     let [own, mutual] = equal_balls(4.0);
     let source = "image series: Smythe, Static and Dynamic Electricity, ch. 5";
     let name = "sphere over plane, R = 1 m, gap 1 m: C [F]";
-    Ok(entry(name, source, &solved, (0, 0), FOUR_PI_EPS0 * (own - mutual)))
+    Ok(entry(name, source, &solved, (0, 0), UNIT_BALL * (own - mutual)))
 }
 
 fn cube() -> Result<ProveLine, StudyError> {
     let solved = solved(vec![prove_shapes::cube()], false, None)?;
     let source = "Helsing and Perfekt 2013: 0.66067815409957 · 4πε₀a";
-    Ok(entry("cube, a = 1 m: C [F]", source, &solved, (0, 0), FOUR_PI_EPS0 * CUBE))
+    Ok(entry("cube, a = 1 m: C [F]", source, &solved, (0, 0), UNIT_BALL * CUBE))
 }
 
 fn disc() -> Result<ProveLine, StudyError> {
     let solved = solved(vec![prove_shapes::disc()], true, None)?;
     let source = "Landau and Lifshitz, Electrodynamics of Continuous Media, section 4: 8ε₀R";
-    let exact = FOUR_PI_EPS0 * 2.0 / std::f64::consts::PI;
+    let exact = UNIT_BALL * 2.0 / std::f64::consts::PI;
     Ok(entry("disc, R = 1 m: C [F]", source, &solved, (0, 0), exact))
 }
 

@@ -40,14 +40,8 @@ use crate::record::RowInfo;
 use crate::record::SCHEMA;
 use crate::record::SurfaceTable;
 use crate::record::Verdict;
-use sha2::Digest;
-use sha2::Sha256;
+use crate::record::sha256;
 use std::collections::BTreeMap;
-
-/// SHA-256 in hexadecimal.
-fn sha256(bytes: &[u8]) -> String {
-    Sha256::digest(bytes).iter().map(|byte| format!("{byte:02x}")).collect()
-}
 
 /// All numbers of a finished study.
 ///

@@ -1,7 +1,9 @@
 //! One full dense round against the bare LU of its size: assembly, factorisation, solution of three
 //! right sides, residuals, correction and bars.
 //!
-//! Prints the ratio; a lone `--test` runs it at a small size so that it does not rot.
+//! Prints the ratio, and the seconds of each part; a lone `--test` runs it at a small size so that it does not rot.
+
+#![expect(clippy::print_stderr, reason = "a bench prints its ratio")]
 
 use amberskin::adapt;
 use amberskin::base::Vec3;

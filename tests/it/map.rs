@@ -10,7 +10,7 @@ const MAP: &[(&str, &[&str])] = &[
     ("geom", &["base"]),
     ("kernel", &["base", "geom"]),
     ("mesh", &["base", "geom"]),
-    ("panel", &["base", "geom", "mesh"]),
+    ("panel", &["base", "geom", "kernel", "mesh"]),
     ("operator", &["base", "geom", "kernel", "panel"]),
     ("solve", &["base", "operator"]),
     ("physics", &["base", "geom", "kernel", "mesh", "panel", "operator", "solve"]),

@@ -132,7 +132,7 @@ fn every_file_asked_for_is_delivered_the_record_last() {
     assert_eq!(store::read(&targets.record).unwrap(), record, "the record given back is the one written");
     let surface = fs::read(&targets.surface).unwrap();
     assert_eq!(record.surface_file.path, "surface.vtu", "its name beside the record");
-    assert_eq!(record.surface_file.sha256, deliver::sha256(&surface), "its hash");
+    assert_eq!(record.surface_file.sha256, amberskin::record::sha256(&surface), "its hash");
     let sheet = fs::read_to_string(targets.answers.unwrap()).unwrap();
     assert!(sheet.contains(&record.surface_file.sha256), "the hash stands on the sheet");
     let again: Vec<Vec<u8>> = written.iter().map(|path| fs::read(path).unwrap()).collect();
@@ -146,7 +146,7 @@ fn every_file_asked_for_is_delivered_the_record_last() {
 #[test]
 fn the_hash_is_sha_256() {
     let abc = "ba7816bf8f01cfea414140de5dae2223b00361a396177a9cb410ff61f20015ad";
-    assert_eq!(deliver::sha256(b"abc"), abc);
+    assert_eq!(amberskin::record::sha256(b"abc"), abc);
 }
 
 #[cfg(unix)]
