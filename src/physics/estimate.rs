@@ -4,6 +4,7 @@ use crate::base::si::EPS0;
 use crate::geom::Triangle;
 use crate::kernel::rules;
 use crate::panel::Panels;
+use crate::physics::gap;
 use crate::physics::unit::Residuals;
 use nalgebra::Matrix2;
 use nalgebra::Matrix6;
@@ -14,7 +15,8 @@ use nalgebra::Vector6;
 ///
 /// `η_ij,T = ε Σ_q w_q A ∇r_i(x_q)ᵀ H ∇r_j(x_q)`, `H = √18 M^½`, `M` the mean of `x xᵀ` over the panel about its
 /// centroid, `∇r` the surface gradient of the quadratic through the six points.  Stored are
-/// `√(ε w_q A) H^½ ∇r`, so that every η is a plain sum of products.
+/// `√(ε w_q A) H^½ ∇r`, so that every η is a plain sum of products; on panels that stand at a narrow gap
+/// times the root of [`gap::steps`].
 #[derive(Clone, Debug, PartialEq)]
 pub struct Estimate {
     /// `slope[j][p][q]`.
@@ -83,6 +85,7 @@ impl Frame {
 /// Works out the weighted gradients.
 pub fn estimate(panels: &Panels, residuals: &Residuals, eps_r: f64) -> Estimate {
     let [d_x, d_y] = differences();
+    let steps = gap::steps(panels);
     let frames: Vec<Frame> = panels.triangles.iter().map(Frame::new).collect();
     let of_panel = |p: usize, at: &[f64; 6]| {
         let values = Vector6::from_column_slice(at);
@@ -90,7 +93,7 @@ pub fn estimate(panels: &Panels, residuals: &Residuals, eps_r: f64) -> Estimate 
         let area = panels.triangles[p].area();
         let mut slopes = [Vector2::zeros(); 6];
         for (q, slope) in slopes.iter_mut().enumerate() {
-            let weight = (EPS0 * eps_r * rules::SIX[q].1 * area).sqrt();
+            let weight = (EPS0 * eps_r * rules::SIX[q].1 * area * steps[p]).sqrt();
             *slope = frames[p].root * (frames[p].grads * Vector2::new(x[q], y[q])) * weight;
         }
         slopes

@@ -11,6 +11,7 @@ pub mod edges;
 pub mod estimate;
 pub mod faceting;
 pub mod field;
+pub mod gap;
 pub mod look;
 pub mod rim;
 pub mod solved;
