@@ -77,16 +77,15 @@ impl Source {
     /// Prepares `tri`.
     pub fn new(tri: &Triangle) -> Self {
         let exact = Prepared::new(tri);
-        let (m, l) = exact.edges();
-        let (longest, cross) = (tri.longest_edge(), tri.cross().norm());
         Source {
             moments: Moments::of(tri),
-            corners: tri.corners.map(Into::into),
-            m: m.map(Into::into),
-            n: tri.normal().into(),
-            l,
-            cross,
-            thin: cross < THIN * longest * longest,
+            // In the order of the prepared edges, which starts with the longest.
+            corners: exact.tri.corners.map(Into::into),
+            m: exact.m.map(Into::into),
+            n: exact.n.into(),
+            l: exact.l,
+            cross: exact.cross,
+            thin: exact.height < THIN * exact.longest,
             exact,
         }
     }
