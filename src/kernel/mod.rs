@@ -16,9 +16,12 @@
 //! ```
 
 pub mod batch;
+mod elementary;
 pub mod far;
 mod lanes;
 pub mod point;
 pub mod rules;
 pub mod segment;
+mod sliver;
 pub mod triangle;
+mod wide;

@@ -11,6 +11,7 @@ mod cli;
 mod fixtures;
 mod geometry;
 mod golden;
+mod kernels;
 mod map;
 mod outputs;
 mod reference;
