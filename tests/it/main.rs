@@ -1,6 +1,7 @@
 //! All integration tests, one module a subject.
 #![allow(clippy::unwrap_used, reason = "a test fails by panicking")]
 
+mod accuracy;
 mod assembly;
 mod bodies;
 mod broken_stl;
@@ -16,5 +17,6 @@ mod outputs;
 mod reference;
 mod repair;
 mod shapes;
+mod solving;
 mod stl;
 mod stl_bodies;
