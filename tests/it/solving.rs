@@ -44,7 +44,8 @@ pub(crate) fn assembled(bodies: &[TestBody], bonds: &[Vec<String>], plane: Optio
     let accepted = |body: &TestBody| {
         let (surface, _) = accept::body(&body.facets, body.sheet, &body.name).unwrap();
         let smooth = smooth::recover(&surface.welded, smooth::CREASE_ANGLE);
-        let surface = Surface { normals: smooth.normals, creases: smooth.creases, ..surface };
+        let surface =
+            Surface { normals: smooth.normals, creases: smooth.creases, rims_as_drawn: false, ..surface };
         Body { name: body.name.clone(), surface }
     };
     assembly::expose(bodies.iter().map(accepted).collect(), bonds, plane).unwrap()
