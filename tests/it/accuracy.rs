@@ -138,6 +138,10 @@ const KNOWN_MISSES: &[(&str, &str)] = &[
         "img.plate.0.005",
         "asked for 1 %, panels of 25 gaps hold no point of the residual near the rim: error -1.02 %, bar 0.11 %",
     ),
+    (
+        "fld.spheres.uneq.0.2.0.05",
+        "facets of the large ball as wide as two gaps: the maximum is off by -1.2 %, its bar is 0.9 %",
+    ),
 ];
 
 /// Distance of a maximum from its place that is allowed, in radii [1].
