@@ -348,7 +348,7 @@ fn assert_three_ball_stack(record: &Record) {
     near(charged.potentials_volt["tap"] - tap, 251.87, f64::INFINITY, "shift of the tap [V]");
     let poles = [("ball", 2.3286334e6, 0.35), ("tap", 1.6106250e6, 0.30), ("foot", 0.6794162e6, 0.17)];
     for (maximum, (name, exact, z)) in plain.maxima.iter().zip(poles) {
-        assert_eq!(maximum.electrode, name);
+        assert_eq!(maximum.electrode, name, "order of the maxima");
         let field = maximum.field_v_per_m.unwrap();
         assert!((field - exact).abs() <= 0.02 * exact, "{name}: {field} and {exact} V/m");
         assert!((field - exact).abs() <= maximum.bar_v_per_m.unwrap(), "{name}: outside its bar");
