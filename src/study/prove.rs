@@ -164,6 +164,7 @@ fn solved(bodies: Vec<Vec<[Vec3; 3]>>, sheet: bool, plane: Option<Plane>) -> Res
 fn body(facets: &[[Vec3; 3]], sheet: bool, name: &str) -> Result<Body, StudyError> {
     let (surface, _) = accept::body(facets, sheet, name).map_err(StudyError::Refused)?;
     let smooth = smooth::recover(&surface.welded, smooth::CREASE_ANGLE);
-    let surface = Surface { normals: smooth.normals, creases: smooth.creases, ..surface };
+    let surface =
+        Surface { normals: smooth.normals, creases: smooth.creases, rims_as_drawn: false, ..surface };
     Ok(Body { name: name.to_owned(), surface })
 }

@@ -1,8 +1,8 @@
 //! The reference values, worked out apart from this program, and the bodies each of them speaks of.
 //!
 //! `tests/reference/references.csv` holds one number a row.  The open length of a row (`a`, `b`, …) is
-//! 1 m here.  Curved bodies get about 2,500 facets with corners on the true surface, flat ones as few
-//! as a drawing would have.
+//! 1 m here.  Curved bodies get about 2,500 facets with corners on the true surface, two equal ones half of
+//! that each, flat ones as few as a drawing would have.
 use crate::shapes;
 use crate::shapes::Facet;
 use amberskin::base::Plane;
@@ -73,8 +73,11 @@ pub(crate) struct TestCase {
     pub(crate) expected: f64,
 }
 
-/// Frequency of the icosphere that stands for a ball: 2,420 facets.
+/// Frequency of the icosphere that stands for a ball: 2,420 facets; for each of two equal balls and for
+/// the wall of a cavity: 1,280; for the outer wall of a vessel, which no value speaks of: 320.
 const BALL: usize = 11;
+const PAIR: usize = 8;
+const OUTSIDE: usize = 4;
 
 /// Halvings of a round sheet: 192 sides, 190 facets, 1.8e-4 less area than the disc.
 const DISC: u32 = 6;
@@ -158,8 +161,8 @@ pub(crate) fn assembly(row: &Row) -> TestCase {
 
 fn bodies(row: &Row) -> (Vec<TestBody>, Option<Plane>) {
     let floor = Some(Plane { through: Vec3::zeros(), facing: Vec3::z() });
-    let ball = |radius: f64, z: f64| {
-        let odd = shapes::turned(&shapes::icosphere(BALL), [1.0, 2.0, 3.0], 0.7);
+    let ball = |radius: f64, z: f64, frequency: usize| {
+        let odd = shapes::turned(&shapes::icosphere(frequency), [1.0, 2.0, 3.0], 0.7);
         shapes::moved(&shapes::scaled(&odd, radius), [0.0, 0.0, z])
     };
     let disc = |radius: f64, z: f64| {
@@ -168,7 +171,7 @@ fn bodies(row: &Row) -> (Vec<TestBody>, Option<Plane>) {
     let square = |side: f64, at: [f64; 3]| shapes::moved(&shapes::rect_sheet(side, side, 1, 1), at);
     let len = |key: &str| row.length(key);
     match row.shape.as_str() {
-        "sphere" => (solids([ball(len("R"), 0.0)]), None),
+        "sphere" => (solids([ball(len("R"), 0.0, BALL)]), None),
         "prolate_spheroid" | "oblate_spheroid" => {
             (solids([shapes::spheroid(len("equatorial"), len("polar"), 30, 42)]), None)
         }
@@ -179,15 +182,19 @@ fn bodies(row: &Row) -> (Vec<TestBody>, Option<Plane>) {
         "rect_plate" => (sheets([shapes::rect_sheet(len("Lx"), len("Ly"), 1, 1)]), None),
         "two_spheres" => {
             let (r1, r2) = (len("R1"), len("R2"));
-            (solids([ball(r1, 0.0), ball(r2, -(r1 + len("gap") + r2))]), None)
+            // Unequal balls stand closer, and the large one needs its facets there.
+            let frequency = if r1.to_bits() == r2.to_bits() { PAIR } else { BALL };
+            (solids([ball(r1, 0.0, frequency), ball(r2, -(r1 + len("gap") + r2), frequency)]), None)
         }
-        "sphere_over_ground" => (solids([ball(len("R"), len("R") + len("gap"))]), floor),
+        "sphere_over_ground" => (solids([ball(len("R"), len("R") + len("gap"), BALL)]), floor),
         "disc_over_ground" => (sheets([disc(len("R"), len("height"))]), floor),
         "square_plate_over_ground" => (sheets([square(len("L"), [0.0, 0.0, len("height")])]), floor),
         "sphere_in_spherical_shell" | "concentric_spheres" => {
-            let wall = shapes::turned(&shapes::vessel(1.0, 1.2, BALL), [3.0, 1.0, 2.0], 0.9);
+            let mut wall = shapes::scaled(&shapes::icosphere(OUTSIDE), 1.2);
+            wall.extend(shapes::flipped(&shapes::icosphere(PAIR)));
+            let wall = shapes::turned(&wall, [3.0, 1.0, 2.0], 0.9);
             let offset = row.length_or("offset", 0.0);
-            (solids([ball(len("inner_R"), -offset), shapes::scaled(&wall, len("outer_R"))]), None)
+            (solids([ball(len("inner_R"), -offset, BALL), shapes::scaled(&wall, len("outer_R"))]), None)
         }
         "two_coaxial_discs" => {
             let radius = |n: usize| row.length_or(&format!("R{n}"), row.length_or("R", 1.0));
