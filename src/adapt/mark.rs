@@ -33,7 +33,7 @@ const MIN_GROWTH: f64 = 0.2;
 const VARIATION_WEIGHT: f64 = 0.2;
 
 /// Magnitude to which the bar of mutual entry (i, j) or, for `None`, of earth entry i relates [F].
-pub(super) fn scale(matrix: &[Vec<f64>], i: usize, j: Option<usize>) -> f64 {
+pub fn scale(matrix: &[Vec<f64>], i: usize, j: Option<usize>) -> f64 {
     match j {
         Some(j) => matrix[i][j].abs().max(FLOOR * (matrix[i][i] * matrix[j][j]).max(0.0).sqrt()),
         None => matrix[i].iter().sum::<f64>().abs().max(FLOOR * matrix[i][i].abs()),
@@ -50,13 +50,15 @@ pub fn over_floor(matrix: &[Vec<f64>], i: usize, j: Option<usize>) -> bool {
 pub fn reached(matrix: &[Vec<f64>], bars: &(Vec<Vec<Bar>>, Vec<Bar>)) -> f64 {
     let n = matrix.len();
     let mut worst = 0.0_f64;
+    // `max` would pass over what is not a number.
+    let mut take = |ratio: f64| worst = if ratio.is_nan() { f64::INFINITY } else { worst.max(ratio) };
     for i in 0..n {
         for j in 0..n {
-            worst = worst.max(bars.0[i][j].total() / scale(matrix, i, Some(j)));
+            take(bars.0[i][j].total() / scale(matrix, i, Some(j)));
         }
-        worst = worst.max(bars.1[i].total() / scale(matrix, i, None));
+        take(bars.1[i].total() / scale(matrix, i, None));
     }
-    if worst.is_nan() { f64::INFINITY } else { worst }
+    worst
 }
 
 /// Cuts for the next round: the panels that carry [`BULK`] of the indicators, at most `room` of them,

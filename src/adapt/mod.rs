@@ -12,6 +12,7 @@ mod split;
 pub use mark::Demand;
 pub use mark::over_floor;
 pub use mark::reached;
+pub use mark::scale;
 pub use run::Finished;
 pub use run::Limits;
 pub use run::Round;

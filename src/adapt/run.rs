@@ -54,8 +54,10 @@ pub struct Round {
 /// The result of the refinement.
 #[derive(Clone, Debug)]
 pub struct Finished {
-    /// The last round.
+    /// The round with the smallest bars, as a rule the last.
     pub solved: Solved,
+    /// Its largest relative bar [1].
+    pub reached: f64,
     /// All rounds.
     pub rounds: Vec<Round>,
     /// Why it stopped.
@@ -76,6 +78,7 @@ pub fn run(
     let began = Instant::now();
     let mut panels = start;
     let mut rounds: Vec<Round> = Vec::new();
+    let mut best: Option<(f64, Solved)> = None;
     loop {
         let before = began.elapsed().as_secs_f64();
         let solved = solved::solve(panels, eps_r)?;
@@ -84,10 +87,10 @@ pub fn run(
         let n = solved.panels.len();
         let mut round = Round { number: rounds.len() + 1, panels: n, reached, seconds, next: None };
         let (stop, cuts) = decide(&solved, reached, demand, limits);
-        if stop.is_some() {
+        if let Some(stop) = stop {
             tell(&round);
             rounds.push(round);
-            return Ok(Finished { solved, rounds, stop: stop.unwrap_or(Stop::Met) });
+            return Ok(finished(solved, reached, best, rounds, stop));
         }
         // Between the square of assembly and the cube of factorisation the cube is the safe guess.
         let growth = ((n + cuts.len()) as f64 / n as f64).powi(3);
@@ -100,9 +103,28 @@ pub fn run(
         tell(&round);
         rounds.push(round);
         if late {
-            return Ok(Finished { solved, rounds, stop: Stop::Time });
+            return Ok(finished(solved, reached, best, rounds, Stop::Time));
         }
         panels = split::bisect(&solved.panels, &cuts);
+        if best.as_ref().is_none_or(|(least, _)| reached <= *least) {
+            best = Some((reached, solved));
+        }
+    }
+}
+
+/// The last round, or an earlier one whose bars were smaller.
+fn finished(
+    solved: Solved,
+    reached: f64,
+    best: Option<(f64, Solved)>,
+    rounds: Vec<Round>,
+    stop: Stop,
+) -> Finished {
+    match best {
+        Some((least, earlier)) if least < reached => {
+            Finished { solved: earlier, reached: least, rounds, stop }
+        }
+        _ => Finished { solved, reached, rounds, stop },
     }
 }
 

@@ -84,7 +84,8 @@ pub fn build(assembly: Arc<Assembly>, plane: Option<Plane>) -> Panels {
 
 /// Panels in the order of their origins, each put at the mean height of the rebuilt surface.
 pub fn from_origins(assembly: Arc<Assembly>, plane: Option<Plane>, origins: &[Origin]) -> Panels {
-    let placed: Vec<(Triangle, f64)> = origins.iter().map(|origin| place::place(&assembly, origin)).collect();
+    let placed: Vec<(Triangle, f64)> =
+        origins.iter().map(|origin| place::place(&assembly, plane.as_ref(), origin)).collect();
     Panels {
         triangles: placed.iter().map(|(tri, _)| *tri).collect(),
         offset: placed.iter().map(|(_, offset)| *offset).collect(),

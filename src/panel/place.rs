@@ -1,6 +1,7 @@
 //! From the drawn facet to the panel: the mean height of the rebuilt surface (DESIGN 3.6).
 
 use super::Origin;
+use crate::base::Plane;
 use crate::base::Vec3;
 use crate::geom::Triangle;
 use crate::kernel::rules;
@@ -13,7 +14,7 @@ use crate::mesh::Assembly;
 /// moved along the recovered normals, so that it widens on a bulge as the surface does and panels of
 /// one height close.  Sphere of 320, 1,280, 2,420 regular facets, error of the capacitance: as drawn
 /// −1.1e-2, −2.9e-3, −1.5e-3, placed so: see `tests/it/accuracy.rs`.
-pub(super) fn place(assembly: &Assembly, origin: &Origin) -> (Triangle, f64) {
+pub(super) fn place(assembly: &Assembly, plane: Option<&Plane>, origin: &Origin) -> (Triangle, f64) {
     let surface = &assembly.bodies[origin.body as usize].surface;
     let facet = origin.facet as usize;
     let corners = surface.welded.facets[facet].map(|k| surface.welded.points[k as usize]);
@@ -30,7 +31,12 @@ pub(super) fn place(assembly: &Assembly, origin: &Origin) -> (Triangle, f64) {
         let along = normal.dot(&n);
         point + if 0.5 < along { normal * (offset / along) } else { n * offset }
     };
-    (Triangle::new(origin.bary.map(at)), offset)
+    let placed = origin.bary.map(at);
+    // A bulge through the earth plane is no bulge: the facets are too coarse for the gap there.
+    if plane.is_some_and(|plane| 0.0 < offset && placed.iter().any(|x| plane.height(x) <= 0.0)) {
+        return (Triangle::new(origin.bary.map(|w| flat.at(w))), 0.0);
+    }
+    (Triangle::new(placed), offset)
 }
 
 fn mean_height(corners: &[Vec3; 3], normals: &[Vec3; 3], n: &Vec3, bary: &[[f64; 3]; 3]) -> f64 {

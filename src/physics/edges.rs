@@ -5,6 +5,7 @@ use crate::base::Vec3;
 use crate::kernel::rules;
 use crate::mesh::Assembly;
 use crate::mesh::Crease;
+use crate::mesh::Surface;
 use crate::physics::solved::Solved;
 use std::f64::consts::PI;
 
@@ -28,6 +29,12 @@ pub struct SharpEdge {
     pub ends: [Vec3; 2],
 }
 
+/// Angle through the metal on the sharper side of a crease [rad]: a fold of a sheet is sharp on one side,
+/// whichever way its facets run.
+pub fn sharp_angle(surface: &Surface, crease: &Crease) -> f64 {
+    if surface.sheet { crease.angle.min(2.0 * PI - crease.angle) } else { crease.angle }
+}
+
 /// Which facets of a body have an exposed piece.
 pub fn exposed_facets(assembly: &Assembly, body: usize) -> Vec<bool> {
     let mut exposed = vec![false; assembly.bodies[body].surface.welded.facets.len()];
@@ -49,12 +56,14 @@ pub fn sharp_edges(solved: &Solved, field: &[f64]) -> Vec<SharpEdge> {
     (0..panels.len()).for_each(|p| beside[panels.body[p] as usize][panels.facet[p] as usize].push(p));
     for (body, part) in panels.assembly.bodies.iter().enumerate() {
         let share = if part.surface.sheet { 0.5 } else { 1.0 };
-        for crease in part.surface.creases.iter().filter(|crease| crease.angle < SEAM) {
+        let sharp = |crease: &&Crease| sharp_angle(&part.surface, crease) < SEAM;
+        for crease in part.surface.creases.iter().filter(sharp) {
+            let angle = sharp_angle(&part.surface, crease);
             let ends = crease.ends.map(|k| part.surface.welded.points[k as usize]);
-            let exponent = PI / (2.0 * PI - crease.angle) - 1.0;
+            let exponent = PI / (2.0 * PI - angle) - 1.0;
             if let Some(mean) = strength(solved, field, crease, &beside[body], ends, exponent) {
                 let strength = mean * share;
-                found.push(SharpEdge { body, angle: crease.angle, exponent, strength, ends });
+                found.push(SharpEdge { body, angle, exponent, strength, ends });
             }
         }
     }

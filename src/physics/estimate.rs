@@ -83,9 +83,10 @@ impl Frame {
 }
 
 /// Works out the weighted gradients.
-pub fn estimate(panels: &Panels, residuals: &Residuals, eps_r: f64) -> Estimate {
+pub fn estimate(panels: &Panels, residuals: &Residuals, gaps: &[f64], eps_r: f64) -> Estimate {
     let [d_x, d_y] = differences();
-    let steps = gap::steps(panels);
+    let steps: Vec<f64> =
+        panels.triangles.iter().zip(gaps).map(|(tri, gap)| gap::steps(tri.longest_edge(), *gap)).collect();
     let frames: Vec<Frame> = panels.triangles.iter().map(Frame::new).collect();
     let of_panel = |p: usize, at: &[f64; 6]| {
         let values = Vector6::from_column_slice(at);

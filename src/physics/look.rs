@@ -67,8 +67,8 @@ impl Map {
 /// behind the earth plane nothing.
 ///
 /// Exact to the charges: their error shows within about one panel length of a surface.  A point closer
-/// to a panel of a solid than the rebuilt surface is to its facet counts as on the surface: it has the
-/// potential of the body and the normal field of the panel.
+/// to a panel of a solid than the rebuilt surface is to its facet, and not above the panel by more than a
+/// part of that, counts as on the surface: it has the potential of the body and the normal field of the panel.
 pub fn look(solved: &Solved, sources: &Sources, map: &Map, v: &[f64], points: &[Vec3]) -> Vec<Seen> {
     let density = field::normal_field(solved, v);
     let none = Seen { potential: 0.0, field: Vec3::zeros() };
@@ -82,21 +82,29 @@ pub fn look(solved: &Solved, sources: &Sources, map: &Map, v: &[f64], points: &[
         Medium::Metal(body) => Seen { potential: body_potential(&solved.panels, body, v), ..none },
         Medium::Surroundings => {
             let gradient = sources.gradient(&points[k], &density);
-            Seen { potential: potentials[0][k] / (4.0 * PI), field: -gradient / (4.0 * PI) }
+            // On an edge or rim the field has no value: zero stands for it, and the medium says where it is.
+            let finite = gradient.iter().all(|g| g.is_finite());
+            let field = if finite { -gradient / (4.0 * PI) } else { Vec3::zeros() };
+            Seen { potential: potentials[0][k] / (4.0 * PI), field }
         }
     })
 }
 
-/// Height over a panel within which a point counts as on the surface, in offsets of the panel [1].
-const ON_SURFACE: f64 = 3.0;
+/// Depth under a panel within which a point counts as on the surface, in offsets of the panel [1]: the
+/// facet itself is one offset down, and its corners three (a cubic over a regular facet).
+const UNDER: f64 = 3.0;
+
+/// The same above it [1]: what the surface rises over its mean height.
+const ABOVE: f64 = 0.5;
 
 /// The panel of a solid on whose rebuilt surface `x` lies.
 fn surface_panel(panels: &Panels, x: &Vec3) -> Option<usize> {
     let distance = |p: usize| (distance::point_of_triangle(&panels.triangles[p], x) - x).norm();
     let solid = |p: &usize| !panels.assembly.bodies[panels.body[*p] as usize].surface.sheet;
     let near = (0..panels.len()).filter(solid).filter(|p| {
-        let reach = ON_SURFACE * panels.offset[*p].abs() + ROUNDING * panels.triangles[*p].longest_edge();
-        distance(*p) <= reach
+        let tri = &panels.triangles[*p];
+        let side = if 0.0 < tri.normal().dot(&(x - tri.centroid())) { ABOVE } else { UNDER };
+        distance(*p) <= side * panels.offset[*p].abs() + ROUNDING * tri.longest_edge()
     });
     near.min_by(|a, b| distance(*a).total_cmp(&distance(*b)))
 }

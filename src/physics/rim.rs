@@ -14,6 +14,9 @@ use std::f64::consts::PI;
 /// Largest turn between neighbouring sides of a rim that is taken for a chord of a round one [rad]: 35°.
 const ROUND: f64 = 35.0 * PI / 180.0;
 
+/// Longest side beside a round corner, in lengths of its neighbour, that is still taken for a chord [1].
+const ALIKE: f64 = 2.0;
+
 /// A side of a rim that stands for an arc.
 #[derive(Clone, Debug, PartialEq)]
 struct Chord {
@@ -102,9 +105,12 @@ fn chords(body: usize, surface: &Surface) -> Vec<Chord> {
     let one = |list: Option<&Vec<usize>>| list.filter(|list| list.len() == 1).map(|list| list[0]);
     let round = |turn: f64| if turn.abs() <= ROUND { turn } else { 0.0 };
     let chord = |(k, (facet, [a, b])): (usize, &(u32, [u32; 2]))| {
-        let before = one(arriving.get(a)).map_or(0.0, |from| round(turn(from, k)));
-        let after = one(leaving.get(b)).map_or(0.0, |to| round(turn(k, to)));
-        let length = (point(*b) - point(*a)).norm();
+        let length_of = |k: usize| (point(sides[k].1[1]) - point(sides[k].1[0])).norm();
+        let length = length_of(k);
+        // A side much longer than its neighbour is a straight one beside a round corner.
+        let alike = |other: &usize| length <= ALIKE * length_of(*other);
+        let before = one(arriving.get(a)).filter(alike).map_or(0.0, |from| round(turn(from, k)));
+        let after = one(leaving.get(b)).filter(alike).map_or(0.0, |to| round(turn(k, to)));
         // An arc of turn θ over a chord l has the mean height l θ/12; half of it from each end.
         let rise = length * (before + after) / 24.0;
         (rise.abs() > 0.0).then(|| Chord { body, facet: *facet, ends: [point(*a), point(*b)], rise })

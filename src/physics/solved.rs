@@ -8,6 +8,7 @@ use crate::physics::capacitance::Matrix;
 use crate::physics::estimate;
 use crate::physics::estimate::Estimate;
 use crate::physics::faceting;
+use crate::physics::gap;
 use crate::physics::permittivity;
 use crate::physics::rim;
 use crate::physics::rim::Rims;
@@ -22,12 +23,6 @@ use crate::solve::direct::SolveError;
 /// entries 5 to 10); with them it is above 1 on every row of the reference table and on cubes down to
 /// a gap of a 5,000th.  The earth entry of two plates bounds κ from above: 12 times the error are asked.
 pub const KAPPA: f64 = 1.3;
-
-/// Share of the faceting correction that enters the bar [1].
-///
-/// On icospheres and latitude–longitude spheres of 320 to 5,000 facets 2 to 7 % of the first-order
-/// correction stays as error.
-pub const FACETING_SHARE: f64 = 0.1;
 
 /// Share of the rim correction of sheets that enters the bar [1].
 ///
@@ -50,6 +45,8 @@ pub struct Solved {
     pub residuals: Residuals,
     /// Weighted gradients of what they miss.
     pub estimate: Estimate,
+    /// Distance of each panel to another conductor or the earth plane, where under its length [m].
+    pub gaps: Vec<f64>,
     /// Round rims of sheets.
     pub rims: Rims,
     /// Before and after the residual correction.
@@ -85,13 +82,14 @@ pub fn solve(panels: Panels, eps_r: f64) -> Result<Solved, SolveError> {
     let charges = unit::solve(&panels, &sources)?;
     let residuals = unit::residuals(&panels, &sources, &charges);
     let capacitance = capacitance::corrected(&panels, &charges, &residuals, eps_r);
-    let estimate = estimate::estimate(&panels, &residuals, eps_r);
+    let gaps = gap::gaps(&panels);
+    let estimate = estimate::estimate(&panels, &residuals, &gaps, eps_r);
     let rims = rim::rims(&panels, &charges);
     let (n, eps) = (panels.n_rows, permittivity(eps_r));
     let gain = |i: usize, j: usize| eps * rims.change(&unit_weight(i, n), &unit_weight(j, n)).0;
     let entry = |i: usize, j: usize| capacitance.corrected[i][j] + gain(i, j);
     let matrix = (0..n).map(|i| (0..n).map(|j| entry(i, j)).collect()).collect();
-    Ok(Solved { panels, eps_r, charges, residuals, estimate, rims, capacitance, matrix })
+    Ok(Solved { panels, eps_r, charges, residuals, estimate, gaps, rims, capacitance, matrix })
 }
 
 /// Weight 1 on row `i`, 0 elsewhere.
@@ -107,13 +105,12 @@ impl Solved {
 
     /// Bar of the combination `uᵀ C v`, by its own weights [F × units of u and v].
     pub fn bar(&self, u: &[f64], v: &[f64]) -> Bar {
-        let (_, faceting) = faceting::change(&self.panels, &self.charges, self.eps_r, [u, v]);
+        let (_, faceting) = faceting::change(&self.panels, &self.charges, &self.gaps, self.eps_r, [u, v]);
         let size = |i: usize, j: usize| (u[i] * self.matrix[i][j] * v[j]).abs();
         let magnitude: f64 = (0..u.len()).map(|i| (0..v.len()).map(|j| size(i, j)).sum::<f64>()).sum();
         Bar {
             discretisation: KAPPA * self.estimate.total(u, v),
-            faceting: FACETING_SHARE * faceting
-                + RIM_SHARE * permittivity(self.eps_r) * self.rims.change(u, v).1,
+            faceting: faceting + RIM_SHARE * permittivity(self.eps_r) * self.rims.change(u, v).1,
             solver: ROUNDING * f64::EPSILON / self.charges.pivot_ratio * magnitude,
         }
     }
@@ -121,7 +118,7 @@ impl Solved {
     /// First-order share of the facets and of straight rims in `uᵀ C v`: rebuilt minus flat [F × units of u
     /// and v].
     pub fn faceting(&self, u: &[f64], v: &[f64]) -> f64 {
-        let facets = faceting::change(&self.panels, &self.charges, self.eps_r, [u, v]).0;
+        let facets = faceting::change(&self.panels, &self.charges, &self.gaps, self.eps_r, [u, v]).0;
         facets + permittivity(self.eps_r) * self.rims.change(u, v).0
     }
 

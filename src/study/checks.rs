@@ -23,7 +23,7 @@ pub(super) fn checks(
     let n = c.len();
     let pairs = || (0..n).flat_map(|i| (0..n).map(move |j| (i, j)));
     let relative = |i: usize, j: usize| bars[i][j] / (c[i][i] * c[j][j]).abs().sqrt();
-    let worst = |values: &mut dyn Iterator<Item = f64>| values.fold(0.0_f64, f64::max);
+    let worst = |values: &mut dyn Iterator<Item = f64>| values.fold(0.0_f64, larger);
     let most_bar = worst(&mut pairs().map(|(i, j)| relative(i, j)));
     let mut found = vec![
         check(
@@ -56,7 +56,11 @@ pub(super) fn checks(
             })),
             CORRECTION + CORRECTION_IN_BARS * most_bar,
         ),
-        check("mean potential error between collocation points [V per V]", mean_residual(solved), RESIDUAL),
+        check(
+            "mean potential error between collocation points [V per V]",
+            mean_residual(solved),
+            RESIDUAL + most_bar,
+        ),
         check(
             "charge of the wrong sign at unit potentials, over C_jj [1]",
             wrong_sign(solved),
@@ -64,7 +68,7 @@ pub(super) fn checks(
         ),
     ];
     found.extend(volume_checks(solved, earth_bars));
-    found.extend(cases.iter().map(energy_check));
+    found.extend(cases.iter().map(|case| energy_check(solved, case)));
     found
 }
 
@@ -80,7 +84,15 @@ const CORRECTION_IN_BARS: f64 = 3.0;
 const RESIDUAL: f64 = 0.05;
 
 /// Charge of the wrong sign allowed beside the bar [1].
-const WRONG_SIGN: f64 = 1e-3;
+///
+/// At concave seams the density tends to zero and steps of constant density cross it: 3.5e-3 on bonded balls
+/// and rod, 1.1e-2 on a cube in a box, both with right capacitances; a wrong sign of an image gives 0.1 and more.
+const WRONG_SIGN: f64 = 0.03;
+
+/// The larger of two numbers, or not-a-number if one is none.
+fn larger(a: f64, b: f64) -> f64 {
+    if a.is_nan() || b.is_nan() { f64::NAN } else { a.max(b) }
+}
 
 fn check(name: &str, value: f64, limit: f64) -> Check {
     // A value that is not a number must not pass, nor be stored.
@@ -105,7 +117,7 @@ fn mean_residual(solved: &Solved) -> f64 {
         let mean = |r: &[f64; 6]| r.iter().zip(rules::SIX).map(|(r, (_, w))| w * r.abs()).sum::<f64>();
         row.iter().zip(&areas).map(|(r, area)| area * mean(r)).sum::<f64>() / total
     };
-    solved.residuals.at.iter().map(of_row).fold(0.0, f64::max)
+    solved.residuals.at.iter().map(of_row).fold(0.0, larger)
 }
 
 /// Maximum principle: at 1 V on row j and 0 V elsewhere, charge is positive on j and negative elsewhere.
@@ -118,7 +130,7 @@ fn wrong_sign(solved: &Solved) -> f64 {
         let total: f64 = (0..panels.len()).map(wrong).sum();
         total * physics::permittivity(solved.eps_r) / solved.matrix[j][j]
     };
-    (0..solved.n_rows()).map(of_row).fold(0.0, f64::max)
+    (0..solved.n_rows()).map(of_row).fold(0.0, larger)
 }
 
 /// All rows together hold at least the capacitance of the ball of equal volume as the largest body
@@ -132,7 +144,7 @@ fn volume_checks(solved: &Solved, earth_bars: &[f64]) -> Vec<Check> {
     let volume = |body: &crate::mesh::Body| {
         let welded = &body.surface.welded;
         let part = |f: &[u32; 3]| {
-            let [a, b, c] = f.map(|k| welded.points[k as usize]);
+            let [a, b, c] = f.map(|k| welded.points[k as usize] - welded.points[0]);
             a.dot(&b.cross(&c)) / 6.0
         };
         if body.surface.sheet { 0.0 } else { welded.facets.iter().map(part).sum::<f64>() }
@@ -161,14 +173,20 @@ fn volume_checks(solved: &Solved, earth_bars: &[f64]) -> Vec<Check> {
     found
 }
 
-/// Energy from potentials and charges against half the quadratic form: both from the same matrix.
-fn energy_check(case: &VoltageCase) -> Check {
-    let from_charges: f64 = case
-        .potentials_volt
-        .iter()
-        .map(|(name, v)| 0.5 * v * case.charges_coulomb.get(name).unwrap_or(&0.0))
-        .sum();
-    let name = format!("energy against ½ Σ V Q in `{}` [1]", case.name);
+/// Energy from potentials and charges against the charge on the panels times their potential: raw charges
+/// know nothing of the residual correction.
+fn energy_check(solved: &Solved, case: &VoltageCase) -> Check {
+    let rows = &solved.panels.assembly.rows;
+    let v: Vec<f64> = rows.iter().map(|row| *case.potentials_volt.get(&row.name).unwrap_or(&0.0)).collect();
+    let field = physics::field::normal_field(solved, &v);
+    let eps = physics::permittivity(solved.eps_r);
+    let of_panel = |p: usize| {
+        let volt = solved.panels.row(p).map_or(0.0, |row| v[row]);
+        0.5 * volt * field[p] * eps * solved.panels.triangles[p].area()
+    };
+    let from_panels: f64 = (0..solved.panels.len()).map(of_panel).sum();
+    let name = format!("energy on the panels against ½ Σ V Q in `{}` [1]", case.name);
     let size = case.energy_joule.abs().max(f64::MIN_POSITIVE);
-    check(&name, (from_charges - case.energy_joule).abs() / size, 1e-9)
+    let limit = CORRECTION + CORRECTION_IN_BARS * case.energy_bar_joule / size;
+    check(&name, (from_panels - case.energy_joule).abs() / size, limit)
 }

@@ -65,7 +65,7 @@ pub(super) fn outcome(
         let cell = |i: usize, j: usize| if i == j { 0.0 } else { m[i][j] };
         (0..m.len()).map(|i| (0..m.len()).map(|j| cell(i, j)).collect()).collect()
     };
-    let reached = finished.rounds.last().map_or(f64::INFINITY, |round| round.reached);
+    let reached = finished.reached;
     let voltage = voltage::results(case, solved, &sources, states, &bar_matrix).map_err(singular)?;
     let checks = checks::checks(solved, &bar_matrix, &totals(&earth_bars), &inverse, &voltage.cases);
     let verdict = verdict(case, finished, reached, &voltage.cases, &checks);
@@ -147,6 +147,7 @@ fn findings(case: &Case, solved: &Solved) -> Vec<FindingRecord> {
         where_metre: finding.place.map(|p| [p.x, p.y, p.z]),
     };
     let mut all: Vec<FindingRecord> = solved.panels.assembly.findings.iter().map(stored).collect();
+    all.extend(solved_findings(case, solved).iter().map(stored));
     if case.accuracy.max_field.is_some() {
         all.push(FindingRecord {
             severity: "note".to_owned(),
@@ -157,6 +158,41 @@ fn findings(case: &Case, solved: &Solved) -> Vec<FindingRecord> {
         });
     }
     all
+}
+
+/// Share of a gap by which facets may be moved before it is told [1].
+const COARSE_FOR_GAP: f64 = 0.1;
+
+/// What only the solution tells: facets too coarse for a gap, and a limit that the drawing exceeds.
+fn solved_findings(case: &Case, solved: &Solved) -> Vec<Finding> {
+    let panels = &solved.panels;
+    let mut found = Vec::new();
+    let share = |p: usize| panels.offset[p].abs() / solved.gaps[p].max(f64::MIN_POSITIVE);
+    let worst = (0..panels.len()).max_by(|a, b| share(*a).total_cmp(&share(*b)));
+    if let Some(p) = worst.filter(|p| COARSE_FOR_GAP < share(*p)) {
+        let name = &panels.assembly.bodies[panels.body[p] as usize].name;
+        found.push(Finding {
+            severity: crate::base::Severity::Warning,
+            code: "facets_coarse_for_gap",
+            text: format!(
+                "`{name}`: the round shape stands {:.3} % of the gap away from its facets; draw it finer there",
+                100.0 * share(p)
+            ),
+            place: Some(panels.triangles[p].centroid()),
+        });
+    }
+    if let Some(most) = case.accuracy.max_panels.filter(|most| *most < panels.len()) {
+        found.push(Finding {
+            severity: crate::base::Severity::Warning,
+            code: "max_panels_exceeded",
+            text: format!(
+                "`max_panels` is {most}, but the shapes as drawn need {} panels from the first round on",
+                panels.len()
+            ),
+            place: None,
+        });
+    }
+    found
 }
 
 fn parts(case: &Case, solved: &Solved) -> Vec<Part> {
@@ -269,14 +305,16 @@ fn verdict(
     if finished.stop != Stop::Met {
         codes.push(3);
         let why = match finished.stop {
-            Stop::MaxPanels => "max_panels",
-            Stop::Time => "time_limit",
-            Stop::Memory => "the memory limit",
-            Stop::Met | Stop::NothingToCut => "the panels that can be cut",
+            Stop::MaxPanels => "`max_panels` left no room for another round; raise it",
+            Stop::Time => "another round would not have fitted into `time_limit`; raise it",
+            Stop::Memory => "another round would not have fitted into the memory; raise `memory_limit`",
+            Stop::Met | Stop::NothingToCut => "no panel was left to cut",
         };
         reasons.push(format!(
-            "capacitance: a bar of {:.2e} was asked and {reached:.2e} reached before {why} ended the refinement",
-            case.accuracy.capacitance
+            "capacitance: a bar of {:.3} % was asked and {:.3} % reached: {why}; {}",
+            100.0 * case.accuracy.capacitance,
+            100.0 * reached,
+            worst_entry(&finished.solved)
         ));
     }
     let certain = codes.contains(&5) || codes.contains(&3) || !over.is_empty();
@@ -288,6 +326,25 @@ fn verdict(
         "not_decided"
     };
     Verdict { word: word.to_owned(), codes, reasons }
+}
+
+/// Which entry has the largest bar, and how much of it is faceting.
+fn worst_entry(solved: &Solved) -> String {
+    let (bars, earth) = solved.bars();
+    let name = |i: usize| solved.panels.assembly.rows[i].name.as_str();
+    let share =
+        |bar: &Bar, i: usize, j: Option<usize>| bar.total() / crate::adapt::scale(&solved.matrix, i, j);
+    let n = solved.n_rows();
+    let pairs = (0..n).flat_map(|i| (i..n).map(move |j| (i, Some(j))));
+    let all = pairs.chain((0..n).map(|i| (i, None)));
+    let bar = |i: usize, j: Option<usize>| j.map_or(earth[i], |j| bars[i][j]);
+    let worst =
+        all.max_by(|a, b| share(&bar(a.0, a.1), a.0, a.1).total_cmp(&share(&bar(b.0, b.1), b.0, b.1)));
+    worst.map_or_else(String::new, |(i, j)| {
+        let facets = 100.0 * bar(i, j).faceting / bar(i, j).total();
+        let other = j.map_or("earth", name);
+        format!("the largest is that of {} to {other}, {facets:.0} % of it from the facets as drawn", name(i))
+    })
 }
 
 fn surface_table(

@@ -39,6 +39,14 @@ pub(super) fn states(case: &Case, assembly: &Assembly) -> Result<Vec<States>, Ve
         }
         refused.extend(earthed_clashes(case, assembly, voltage_case));
         refused.extend(group_clashes(&groups, &found, assembly, voltage_case));
+        // A guard bonded to what it follows needs no source of its own.
+        for group in &groups {
+            for row in group {
+                if matches!(found.get(*row), Some(State::Follow(leader)) if group.contains(leader)) {
+                    found[*row] = State::Charge(0.0);
+                }
+            }
+        }
         all.push(States { rows: found, groups: groups.clone() });
     }
     if refused.is_empty() { Ok(all) } else { Err(refused) }

@@ -153,7 +153,8 @@ fn maximum(electrode: &Electrode, peak: &Peak) -> Maximum {
         curvature_per_metre: peak.curvature,
         limit_v_per_m: limit.map(|(limit, _)| limit),
         limit_is: limit.map(|(_, is)| word(is).to_owned()),
-        margin: limit.filter(|_| bounded).map(|(limit, _)| limit / peak.field - 1.0),
+        // A field under its bar leaves no margin that means anything.
+        margin: limit.filter(|_| bounded && peak.bar < peak.field).map(|(limit, _)| limit / peak.field - 1.0),
         judged: judged.to_owned(),
     }
 }

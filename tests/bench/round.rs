@@ -21,6 +21,7 @@ use amberskin::panel;
 use amberskin::panel::Panels;
 use amberskin::physics::capacitance;
 use amberskin::physics::estimate;
+use amberskin::physics::gap;
 use amberskin::physics::unit;
 use amberskin::solve::direct;
 use criterion::Criterion;
@@ -88,7 +89,7 @@ fn round(panels: &Panels) -> (Vec<(&'static str, f64)>, f64) {
     let residuals = unit::residuals(panels, &sources, &charges);
     lap("residuals");
     let flat = capacitance::corrected(panels, &charges, &residuals, 1.0);
-    let estimate = estimate::estimate(panels, &residuals, 1.0);
+    let estimate = estimate::estimate(panels, &residuals, &gap::gaps(panels), 1.0);
     let bar = estimate.total(&[1.0, 0.0, 0.0], &[1.0, 0.0, 0.0]);
     lap("correction and bars");
     assert!(0.0 < bar && 0.0 < flat.corrected[0][0], "a bar and a capacitance above zero");

@@ -138,10 +138,6 @@ const KNOWN_MISSES: &[(&str, &str)] = &[
         "img.plate.0.005",
         "asked for 1 %, panels of 25 gaps hold no point of the residual near the rim: error -1.02 %, bar 0.11 %",
     ),
-    (
-        "fld.spheres.uneq.0.2.0.05",
-        "facets of the large ball as wide as two gaps: the maximum is off by -1.2 %, its bar is 0.9 %",
-    ),
 ];
 
 /// Distance of a maximum from its place that is allowed, in radii [1].
@@ -246,7 +242,7 @@ const OUT_OF_REACH: f64 = 1e-12;
 const SMALL: f64 = 1e-5;
 
 /// Bar of an earth entry over its error that is seen at most [1]: 14; 12 are wanted.
-const EARTH_TIMES: f64 = 15.0;
+const EARTH_TIMES: f64 = 12.0;
 
 /// Relative error within `allowed`, bar over the truth and at most `times` the error.
 #[track_caller]
