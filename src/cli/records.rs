@@ -117,7 +117,9 @@ pub(super) fn say_cautions(record: &Record, show: &Show) {
             show.remark(&format!("caution: {name}, {}: {at}", case.name));
         }
     }
-    show.remark(&format!("caution: {}", cautions::CHARGED));
+    if !record.voltage_cases.is_empty() {
+        show.remark(&format!("caution: {}", cautions::CHARGED));
+    }
 }
 
 /// The first of `codes`, most severe first, that the verdict of a record holds.

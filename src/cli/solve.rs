@@ -11,6 +11,7 @@ use crate::cli::records;
 use crate::cli::show::Show;
 use crate::record::FileHash;
 use crate::record::RecordError;
+use crate::record::cautions::ESTIMATE;
 use crate::record::sha256;
 use crate::record::store;
 use crate::report;
@@ -18,13 +19,17 @@ use crate::report::Printing;
 use crate::report::Targets;
 use crate::report::answers;
 use crate::study;
+use crate::study::StudyError;
 
 /// Solves the case, prints the answers and writes the files.
 ///
 /// # Errors
 /// [`Failure`]; no file is written then, or each one whole.
 pub(super) fn run(args: &args::Solve, show: &Show) -> Result<u8, Failure> {
-    let (case, shapes) = case::load(&args.case)?;
+    let (case, shapes) = case::load(&args.case).map_err(|error| match store::read(&args.case) {
+        Ok(_) => Failure::IsRecord { path: args.case.clone() },
+        Err(_) => Failure::Case(error),
+    })?;
     let (targets, printing) = (targets(&case), printing(&case));
     if !args.overwrite {
         check_targets(&case, &shapes, &targets)?;
@@ -33,7 +38,12 @@ pub(super) fn run(args: &args::Solve, show: &Show) -> Result<u8, Failure> {
     let progress = Progress::start(show);
     let outcome = study::run(&case, &shapes, &|event| progress.tell(event));
     progress.end();
-    let study::Outcome { mut record, surface } = outcome?;
+    let study::Outcome { mut record, surface } = outcome.map_err(|error| match error {
+        error @ StudyError::Refused(_) => {
+            Failure::Refused { error, unit_name: case.length_name.clone(), unit: case.length_unit }
+        }
+        other => Failure::Study(other),
+    })?;
     let written = report::deliver(&mut record, &surface, &targets, &printing)?;
     if show.json {
         let mut bytes = Vec::new();
@@ -46,7 +56,7 @@ pub(super) fn run(args: &args::Solve, show: &Show) -> Result<u8, Failure> {
         show.remark(&format!("written: {}", path.display()));
     }
     for reason in &record.verdict.reasons {
-        show.remark(&format!("{}: {reason}", record.verdict.word));
+        show.remark(&format!("{}: {reason}: {ESTIMATE}", record.verdict.word));
     }
     if show.json {
         records::say_cautions(&record, show);

@@ -189,6 +189,22 @@ fn refusals_alone_are_counted_as_problems() {
 }
 
 #[test]
+fn a_record_or_case_in_the_wrong_place_is_recognised() {
+    let dir = tempfile::tempdir().unwrap();
+    fs::write(dir.path().join("r.json"), RECORD).unwrap();
+    fs::write(dir.path().join("case.txt"), CASE).unwrap();
+    for (words, said) in [
+        (["solve", "r.json"], "this is a record"),
+        (["inspect", "r.json"], "this is a record"),
+        (["inspect", "case.txt"], "this looks like a case"),
+    ] {
+        let (code, _, err) = told(run(dir.path(), &words));
+        assert_eq!(code, 1, "{err}");
+        assert!(err.contains(said), "{err}");
+    }
+}
+
+#[test]
 fn a_record_answers_in_text_csv_and_json() {
     let dir = tempfile::tempdir().unwrap();
     fs::write(dir.path().join("r.json"), RECORD).unwrap();
