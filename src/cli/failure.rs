@@ -62,6 +62,12 @@ pub(super) enum Failure {
         /// The file.
         path: PathBuf,
     },
+    /// An output would replace the case or a shape.
+    #[error("{}: read by this case, and named for an output under [deliver]; give the output another name", .path.display())]
+    Input {
+        /// The file.
+        path: PathBuf,
+    },
     /// The record in the way is one of another study.
     #[error(
         "{}: holds {held}; give another [deliver] folder or record, or --overwrite to replace it",
@@ -95,6 +101,7 @@ impl Failure {
             Failure::Case(_)
             | Failure::Mixed
             | Failure::CaseToCase
+            | Failure::Input { .. }
             | Failure::IsRecord { .. }
             | Failure::LooksLikeCase { .. }
             | Failure::Exists { .. }

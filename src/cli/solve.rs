@@ -20,6 +20,8 @@ use crate::report::Targets;
 use crate::report::answers;
 use crate::study;
 use crate::study::StudyError;
+use std::path::Path;
+use std::path::PathBuf;
 
 /// Solves the case, prints the answers and writes the files.
 ///
@@ -31,6 +33,7 @@ pub(super) fn run(args: &args::Solve, show: &Show) -> Result<u8, Failure> {
         Err(_) => Failure::Case(error),
     })?;
     let (targets, printing) = (targets(&case), printing(&case));
+    keep_inputs(&args.case, &case, &targets)?;
     if !args.overwrite {
         check_targets(&case, &shapes, &targets)?;
     }
@@ -70,6 +73,20 @@ fn say_defaults(case: &Case, show: &Show) {
     }
     if case.accuracy.max_field.is_some() {
         show.remark("`max_field` was read; refinement is not steered by it in this version");
+    }
+}
+
+/// Refuses, whatever was allowed, to write over the case or a shape file.
+fn keep_inputs(path: &Path, case: &Case, targets: &Targets) -> Result<(), Failure> {
+    let folder = path.parent().unwrap_or(Path::new(""));
+    let shapes = case.shape_paths.iter().map(|shape| folder.join(shape));
+    let inputs: Vec<PathBuf> =
+        shapes.chain([path.to_owned()]).filter_map(|input| input.canonicalize().ok()).collect();
+    // A target that is not there has no such name and is in nobody's way.
+    let is_input = |target: &PathBuf| target.canonicalize().is_ok_and(|whole| inputs.contains(&whole));
+    match targets.paths().into_iter().find(is_input) {
+        Some(path) => Err(Failure::Input { path }),
+        None => Ok(()),
     }
 }
 

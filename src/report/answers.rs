@@ -236,11 +236,25 @@ fn effort_text(record: &Record) -> String {
     text + "\n\n"
 }
 
+/// A text whose numbers of full length, which a factor left behind, have six digits; the record keeps
+/// them whole.
+fn shortened(text: &str) -> String {
+    let short = |word: &str| {
+        let digits = word.chars().filter(char::is_ascii_digit).count();
+        let number = word.parse::<f64>().ok().filter(|_| FULL_LENGTH <= digits);
+        number.map_or_else(|| word.to_owned(), |number| digits::significant(number, 6))
+    };
+    text.split(' ').map(short).collect::<Vec<String>>().join(" ")
+}
+
+/// Digits from which a number is taken for the result of a product [1]; a double has up to 17.
+const FULL_LENGTH: usize = 15;
+
 /// Every word of the case as understood, defaults included.
 fn case_text(record: &Record) -> String {
     let mut text = "Case as understood, defaults included\n".to_owned();
     for (key, value) in record.case.resolved.iter().filter(|(key, _)| !key.starts_with("study.")) {
-        text += &format!("  {} = {}\n", clean(key), clean(value));
+        text += &format!("  {} = {}\n", clean(key), shortened(&clean(value)));
     }
     text + "\n"
 }

@@ -173,6 +173,17 @@ fn a_file_that_is_no_earlier_result_stays_unless_told_otherwise() {
 }
 
 #[test]
+fn a_shape_is_never_written_over() {
+    let dir = tempfile::tempdir().unwrap();
+    let case = CASE.to_owned() + "[deliver]\nfolder = \".\"\nanswers = \"ball.stl\"\n";
+    fs::write(dir.path().join("case.toml"), case).unwrap();
+    fs::write(dir.path().join("ball.stl"), "solid x\nendsolid x\n").unwrap();
+    let (code, _, err) = told(run(dir.path(), &["solve", "case.toml", "--overwrite"]));
+    assert_eq!(code, 1, "{err}");
+    assert!(err.contains("ball.stl: read by this case"), "{err}");
+}
+
+#[test]
 fn refusals_alone_are_counted_as_problems() {
     let dir = tempfile::tempdir().unwrap();
     fs::write(dir.path().join("case.toml"), CASE).unwrap();

@@ -292,6 +292,24 @@ fn names_with_line_breaks_cannot_forge_lines() {
 }
 
 #[test]
+fn many_slivers_and_edges_are_counted_and_few_printed() {
+    let mut record = fixtures::record();
+    let edge = record.edges[0].clone();
+    record.edges.extend(vec![edge; 6]);
+    let mut sliver = record.findings[0].clone();
+    (sliver.code, sliver.text) =
+        ("sliver".into(), "`tap`: sliver at (0, 0.03, 1e-5) m: 2000 times as long".into());
+    record.findings.extend(vec![sliver; 9]);
+    record.case.resolved.insert("electrode.tap.turn".into(), "0.6108652381980153 rad about 0.25".into());
+    let text = answers::sheet(&record, &Printing::default());
+    assert_eq!(text.matches("unbounded at edge, 90 degrees").count(), 3, "{text}");
+    assert!(text.contains("foot: 4 more unbounded edges stand in the record"), "{text}");
+    assert_eq!(text.matches("`tap`: sliver at (0, 30, 0.01) mm: 2000 times").count(), 5, "{text}");
+    assert!(text.contains("`tap`: 4 more lines on slivers stand in the record"), "{text}");
+    assert!(text.contains("turn = 0.610865 rad about 0.25\n"), "{text}");
+}
+
+#[test]
 fn the_square_matrix_has_its_unit_in_the_header() {
     golden::check("matrix.csv", &text_of(|out| csv::square(&fixtures::record(), Form::Mutual, out)), 1e-12);
 }
