@@ -25,15 +25,15 @@ use crate::study;
 /// [`Failure`]; no file is written then, or each one whole.
 pub(super) fn run(args: &args::Solve, show: &Show) -> Result<u8, Failure> {
     let (case, shapes) = case::load(&args.case)?;
+    let (targets, printing) = (targets(&case), printing(&case));
     if !args.overwrite {
-        check_record(&case, &shapes)?;
+        check_targets(&case, &shapes, &targets)?;
     }
     say_defaults(&case, show);
     let progress = Progress::start(show);
     let outcome = study::run(&case, &shapes, &|event| progress.tell(event));
     progress.end();
     let study::Outcome { mut record, surface } = outcome?;
-    let (targets, printing) = (targets(&case), printing(&case));
     let written = report::deliver(&mut record, &surface, &targets, &printing)?;
     if show.json {
         let mut bytes = Vec::new();
@@ -63,11 +63,16 @@ fn say_defaults(case: &Case, show: &Show) {
     }
 }
 
-/// Refuses if the record in the way belongs to another case or other shapes, before any work.
-fn check_record(case: &Case, shapes: &Shapes) -> Result<(), Failure> {
-    let path = &case.deliver.record;
+/// Refuses, before any work, if the record in the way belongs to another case or other shapes, or if
+/// any other file stands where one would be written and no record of this case beside it tells that
+/// it is an earlier result.
+fn check_targets(case: &Case, shapes: &Shapes, targets: &Targets) -> Result<(), Failure> {
+    let path = &targets.record;
     if !path.exists() {
-        return Ok(());
+        return match targets.paths().into_iter().find(|path| path.exists()) {
+            Some(path) => Err(Failure::Exists { path }),
+            None => Ok(()),
+        };
     }
     let other = |held| Err(Failure::OtherRecord { path: path.clone(), held });
     let record = match store::read(path) {

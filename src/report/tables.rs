@@ -110,7 +110,10 @@ pub fn head_text(record: &Record) -> String {
     }
     let (asked, reached) = (record.accuracy.asked, record.accuracy.reached);
     let (asked, reached) = (digits::percent(asked, false), digits::percent(reached, false));
-    text + &format!("  bar of the capacitances: asked {asked}, reached {reached}\n\n")
+    text + &format!(
+        "  bar of the capacitances: asked {asked}, reached {reached}\n  case sha256 {}\n\n",
+        clean(&record.case.sha256)
+    )
 }
 
 /// The caution of a floating electrode with its potential in one voltage case.
