@@ -75,7 +75,7 @@ fn put_electrode(case: &Case, electrode: &Electrode, put: &mut impl FnMut(String
     say("role", role);
     say("sheet", electrode.sheet.to_string());
     let angle = electrode.crease_angle.unwrap_or(smooth::CREASE_ANGLE);
-    say("crease_angle", format!("{angle} rad"));
+    say("crease_angle", degrees(angle));
     let surface = match electrode.surface {
         SurfaceKind::Rebuilt => "rebuilt",
         SurfaceKind::AsDrawn => "as_drawn",
@@ -94,13 +94,18 @@ fn put_electrode(case: &Case, electrode: &Electrode, put: &mut impl FnMut(String
     if let Some(place) = &electrode.place {
         say("place.scale", place.scale.to_string());
         for (n, (axis, angle)) in place.rotate.iter().enumerate() {
-            say(&format!("place.rotate.{}", n + 1), format!("{angle} rad about {}", numbers(axis)));
+            say(&format!("place.rotate.{}", n + 1), format!("{} about {}", degrees(*angle), numbers(axis)));
         }
         say("place.shift", metres(&place.shift));
     }
     if let Some(drawing) = &electrode.drawing {
         say("drawing", drawing.clone());
     }
+}
+
+/// An angle [rad] in degrees, without the digits that rounding leaves behind.
+fn degrees(angle: f64) -> String {
+    format!("{} deg", (angle.to_degrees() * 1e9).round() / 1e9)
 }
 
 fn put_accuracy(case: &Case, put: &mut impl FnMut(String, String)) {

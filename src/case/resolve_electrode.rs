@@ -51,6 +51,11 @@ pub(super) fn electrodes(
     for (n, electrode) in electrodes.iter().enumerate() {
         let span = wires[n].get_ref().name.as_ref().map_or(wires[n].span(), Spanned::span);
         check_name(&electrode.name, "an electrode", &span, sink);
+        if electrode.name.contains('+') {
+            let wanted = "a name without `+`, which joins the names of bonded electrodes that touch";
+            let found = format!("{:?}", electrode.name);
+            sink.note(span.clone(), Fault::Range { word: "name".to_owned(), found, wanted });
+        }
         if electrodes[..n].iter().any(|other| other.name == electrode.name) && !electrode.name.is_empty() {
             sink.note(span, Fault::Twice { what: "electrode name", name: electrode.name.clone() });
         }

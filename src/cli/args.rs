@@ -69,7 +69,7 @@ pub(super) struct Inspect {
 pub(super) struct Solve {
     /// The case file (TOML).
     pub(super) case: PathBuf,
-    /// Replace a record that belongs to another case or to other shapes.
+    /// Replace a record of another case or of other shapes, and files that no record of this case names.
     #[arg(long)]
     pub(super) overwrite: bool,
 }

@@ -27,6 +27,9 @@ length = ""                   # of the numbers inside the STL files and of bare 
 # facing  = [0, 0, 1]         # to the side on which the electrodes stand
 "#;
 
+/// Beside an open surface: whether a hole or a sheet was meant, only the user knows.
+const OPEN: &str = "# sheet    = true             # the surface is open: close the hole, or uncomment if the metal is a thin sheet\n";
+
 const TAIL: &str = r#"
 # [[voltage_case]]            # one for each set of applied potentials; without any: matrices only
 # name       = "test voltage"
@@ -59,7 +62,7 @@ pub(super) fn text(bodies: &[BodyLine], path: &Path) -> String {
             "role       = \"live\"           # live, earthed, floating, or guard with follows = \"NAME\"\n",
         );
         if !body.closed {
-            text.push_str("sheet      = true             # the surface is open\n");
+            text.push_str(OPEN);
         }
         text.push_str(&format!(
             "size_check = []               # overall size on the drawing; the file has {x} x {y} x {z} of its unit\n"
@@ -165,7 +168,11 @@ mod tests {
         assert_eq!(names, ["a_b_0", "a_b_1", "o_x_y"]);
         assert_eq!(case.shape_paths, ["m/a b.stl", "o'x\\y.stl"]);
         assert_eq!(case.electrodes[1].shell, Some(case::Shell::Index(1)));
-        assert!(case.electrodes[2].sheet);
+        assert!(case.electrodes.iter().all(|electrode| !electrode.sheet), "a hole is not made a sheet");
+        let sheet = filled.replace("# sheet ", "sheet ");
+        assert_eq!(sheet.matches("sheet    = true").count(), 1, "only the open surface is asked about");
+        let case = case::parse(&sheet, Path::new("c.toml")).unwrap_or_else(|error| panic!("{error}"));
+        assert!(case.electrodes[2].sheet, "uncommented, it is a sheet");
     }
 
     #[test]

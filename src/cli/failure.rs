@@ -3,6 +3,7 @@
 use crate::base::Finding;
 use crate::case::CaseError;
 use crate::cli;
+use crate::cli::show::LengthUnit;
 use crate::record::RecordError;
 use crate::report::ReportError;
 use crate::study::StudyError;
@@ -18,6 +19,28 @@ pub(super) enum Failure {
     /// The study gave no record.
     #[error(transparent)]
     Study(#[from] StudyError),
+    /// The geometry of a case is refused.
+    #[error("{error}")]
+    Refused {
+        /// The findings.
+        error: StudyError,
+        /// Name of the length unit of the case.
+        unit_name: String,
+        /// Metres in it [m].
+        unit: f64,
+    },
+    /// A record where a case or a shape is wanted.
+    #[error("{}: this is a record of a solved case; `matrix`, `stress` and `netlist` answer from it", .path.display())]
+    IsRecord {
+        /// The file.
+        path: PathBuf,
+    },
+    /// A case with the wrong ending.
+    #[error("{}: this looks like a case; give it the ending .toml", .path.display())]
+    LooksLikeCase {
+        /// The file.
+        path: PathBuf,
+    },
     /// An output could not be written.
     #[error(transparent)]
     Report(#[from] ReportError),
@@ -36,6 +59,12 @@ pub(super) enum Failure {
     /// A file is in the way.
     #[error("{}: a file already stands there; give another name, or --overwrite to replace it", .path.display())]
     Exists {
+        /// The file.
+        path: PathBuf,
+    },
+    /// An output would replace the case or a shape.
+    #[error("{}: read by this case, and named for an output under [deliver]; give the output another name", .path.display())]
+    Input {
         /// The file.
         path: PathBuf,
     },
@@ -63,7 +92,7 @@ impl Failure {
     pub(super) fn code(&self) -> u8 {
         match self {
             Failure::Case(error) if error.is_unread() => cli::FILE,
-            Failure::Study(StudyError::Refused(_)) => cli::REFUSED,
+            Failure::Study(StudyError::Refused(_)) | Failure::Refused { .. } => cli::REFUSED,
             Failure::Study(StudyError::Memory { .. }) => cli::ACCURACY,
             Failure::Study(StudyError::Singular(_)) => cli::CHECK,
             Failure::Report(ReportError::SameName { .. }) => cli::BAD_REQUEST,
@@ -72,16 +101,28 @@ impl Failure {
             Failure::Case(_)
             | Failure::Mixed
             | Failure::CaseToCase
+            | Failure::Input { .. }
+            | Failure::IsRecord { .. }
+            | Failure::LooksLikeCase { .. }
             | Failure::Exists { .. }
             | Failure::OtherRecord { .. }
             | Failure::NotYet { .. } => cli::BAD_REQUEST,
         }
     }
 
+    /// The unit in which lengths of its findings are told.
+    pub(super) fn unit(&self) -> LengthUnit<'_> {
+        match self {
+            Failure::Refused { unit_name, unit, .. } => (unit_name, *unit),
+            _ => ("m", 1.0),
+        }
+    }
+
     /// The findings that go with it.
     pub(super) fn findings(&self) -> &[Finding] {
         match self {
-            Failure::Study(StudyError::Refused(findings)) => findings,
+            Failure::Study(StudyError::Refused(findings))
+            | Failure::Refused { error: StudyError::Refused(findings), .. } => findings,
             _ => &[],
         }
     }

@@ -183,7 +183,9 @@ pub(super) const KEY: &[(&str, &str)] = &[
     ),
     (
         "Field units",
-        "1 kV/mm = 10 kV/cm = 1 MV/m. Field on metal points along the normal; its sign is that of the charge.",
+        "1 kV/mm = 10 kV/cm = 1 MV/m. Field on metal points along the normal, outward \
+         where the charge is positive. Maxima and limits are magnitudes, printed without a sign; the surface \
+         file holds the field along the outward normal with its sign.",
     ),
     (
         "Unbounded at edge",

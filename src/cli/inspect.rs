@@ -2,6 +2,7 @@
 
 use crate::base::Severity;
 use crate::case;
+use crate::case::ShapeFile;
 use crate::cli;
 use crate::cli::args;
 use crate::cli::case_to_fill;
@@ -12,6 +13,7 @@ use crate::cli::show::Show;
 use crate::report::digits;
 use crate::report::file;
 use crate::report::form::clean;
+use crate::report::lengths;
 use crate::report::stl;
 use crate::study;
 use crate::study::BodyLine;
@@ -42,6 +44,7 @@ pub(super) fn run(args: &args::Inspect, show: &Show) -> Result<u8, Failure> {
         paths => {
             let names: Vec<String> = paths.iter().map(|path| path.to_string_lossy().into_owned()).collect();
             let shapes = case::read_shapes(&names, Path::new(""))?;
+            shapes.files.iter().try_for_each(no_other_file)?;
             (study::inspect_files(&shapes), None)
         }
     };
@@ -61,6 +64,17 @@ pub(super) fn run(args: &args::Inspect, show: &Show) -> Result<u8, Failure> {
     }
     let refused = inspection.findings.iter().any(|finding| finding.severity == Severity::Refusal);
     Ok(if refused { cli::REFUSED } else { cli::DONE })
+}
+
+/// Refuses a record or a case given for an STL file.
+fn no_other_file(file: &ShapeFile) -> Result<(), Failure> {
+    let path = PathBuf::from(&file.path);
+    let Ok(text) = std::str::from_utf8(&file.bytes) else { return Ok(()) };
+    let starts = |line: &str| text.lines().any(|l| l.trim_start().starts_with(line));
+    if text.trim_start().starts_with('{') && text.contains("\"capacitance_farad\"") {
+        return Err(Failure::IsRecord { path });
+    }
+    if starts("[[electrode]]") || starts("[units]") { Err(Failure::LooksLikeCase { path }) } else { Ok(()) }
 }
 
 fn as_text(inspection: &Inspection, unit: Option<show::LengthUnit<'_>>) -> String {
@@ -117,6 +131,8 @@ fn as_json(inspection: &Inspection, metres: bool) -> Value {
     let findings = inspection.findings.iter().map(|finding| {
         let mut value = show::finding_json(finding);
         if !metres && let Some(object) = value.as_object_mut() {
+            let text = lengths::in_unit(&finding.text, "drawing units", 1.0);
+            object.insert("text".to_owned(), Value::from(text));
             let place = object.remove("where_metre");
             object.insert("where".to_owned(), place.unwrap_or(Value::Null));
         }

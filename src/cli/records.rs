@@ -43,9 +43,12 @@ pub(super) fn matrix(args: &args::Matrix, show: &Show) -> Result<u8, Failure> {
     } else {
         let printing = printing::of_record(&record);
         let tables = forms.iter().map(|form| tables::matrix_text(&record, *form, &printing));
-        show.result(&tables.collect::<Vec<String>>().join("\n"))?;
+        let tables = tables.collect::<Vec<String>>().join("\n");
+        show.result(&format!("{}{tables}", tables::head_text(&record)))?;
     }
-    say_cautions(&record, show);
+    if show.json || args.csv {
+        say_cautions(&record, show);
+    }
     Ok(cli::DONE)
 }
 
@@ -57,14 +60,16 @@ pub(super) fn stress(args: &args::Stress, show: &Show) -> Result<u8, Failure> {
     let record = store::read(&args.record)?;
     if show.json {
         show.result(&json::stress_json(&record))?;
-    } else if record.voltage_cases.is_empty() {
-        show.remark(
-            "the record has no voltage case, so no field; give the case a [[voltage_case]] and solve it",
-        );
+        say_cautions(&record, show);
     } else {
-        show.result(&tables::stress_text(&record, &printing::of_record(&record)))?;
+        if record.voltage_cases.is_empty() {
+            show.remark(
+                "the record has no voltage case, so no field; give the case a [[voltage_case]] and solve it",
+            );
+        }
+        let table = tables::stress_text(&record, &printing::of_record(&record));
+        show.result(&format!("{}{table}", tables::head_text(&record)))?;
     }
-    say_cautions(&record, show);
     Ok(verdict_code(&record, &[cli::CHECK, cli::LIMIT]))
 }
 
@@ -74,8 +79,9 @@ pub(super) fn stress(args: &args::Stress, show: &Show) -> Result<u8, Failure> {
 /// [`Failure`]: the record cannot be read, or the netlist not written.
 pub(super) fn netlist(args: &args::Netlist, show: &Show) -> Result<u8, Failure> {
     let record = store::read(&args.record)?;
-    let name = args.output.as_deref().and_then(Path::file_stem);
-    let name = name.map_or("netlist".to_owned(), |stem| stem.to_string_lossy().into_owned());
+    let stem = args.output.as_deref().and_then(Path::file_stem);
+    let stem = stem.map_or("netlist".to_owned(), |stem| stem.to_string_lossy().into_owned());
+    let name = netlist::subcircuit_name(&record, &stem);
     let options = netlist::Options { name, bleeds: !args.no_bleed };
     let text = in_memory(|out| netlist::write(&record, &options, out))?;
     if let Some(path) = &args.output {
@@ -86,10 +92,12 @@ pub(super) fn netlist(args: &args::Netlist, show: &Show) -> Result<u8, Failure> 
         show.remark(&format!("written: {}", path.display()));
     }
     if show.json {
-        let pins = netlist::pins(&record.electrodes);
-        let value = serde_json::json!({
-            "netlist": text, "electrodes": record.electrodes, "pins": pins, "cautions": record.cautions
-        });
+        let mut pins = netlist::pins(&record.electrodes);
+        pins.push("earth".to_owned());
+        let mut value = json::head(&record);
+        value["netlist"] = Value::from(text);
+        value["electrodes"] = Value::from(record.electrodes.clone());
+        value["pins"] = Value::from(pins);
         show.result(&format!("{value:#}"))?;
     } else if args.output.is_none() {
         show.result(&text)?;
@@ -109,7 +117,9 @@ pub(super) fn say_cautions(record: &Record, show: &Show) {
             show.remark(&format!("caution: {name}, {}: {at}", case.name));
         }
     }
-    show.remark(&format!("caution: {}", cautions::CHARGED));
+    if !record.voltage_cases.is_empty() {
+        show.remark(&format!("caution: {}", cautions::CHARGED));
+    }
 }
 
 /// The first of `codes`, most severe first, that the verdict of a record holds.

@@ -4,6 +4,7 @@ use crate::base::Finding;
 use crate::cli::failure::Failure;
 use crate::report::digits;
 use crate::report::form::clean;
+use crate::report::lengths;
 use serde_json::Value;
 use serde_json::json;
 use std::io;
@@ -42,7 +43,7 @@ impl Show {
     /// An error with its findings: text to standard error, and JSON to standard output if asked for.
     pub(super) fn failure(&self, failure: &Failure) {
         for finding in failure.findings() {
-            to_stderr(&finding_text(finding, METRE));
+            to_stderr(&finding_text(finding, failure.unit()));
         }
         to_stderr(&format!("error: {failure}"));
         if self.json {
@@ -64,13 +65,13 @@ pub(super) fn to_stderr(text: &str) {
 /// A unit of length for places: name and metres per unit.
 pub(super) type LengthUnit<'a> = (&'a str, f64);
 
-/// Places in metres.
-pub(super) const METRE: LengthUnit<'static> = ("m", 1.0);
-
 /// A finding on one line, its place in `unit`.
 pub(super) fn finding_text(finding: &Finding, (name, metres): LengthUnit<'_>) -> String {
     let place = finding.place.map(|at| format!(", at {} {name}", digits::place(&[at.x, at.y, at.z], metres)));
-    format!("{}: {}{}", finding.severity.word(), clean(&finding.text), place.unwrap_or_default())
+    let text = lengths::in_unit(&clean(&finding.text), name, metres);
+    // Many texts name their place themselves.
+    let place = place.filter(|_| !text.contains(&format!(") {name}")));
+    format!("{}: {text}{}", finding.severity.word(), place.unwrap_or_default())
 }
 
 /// A finding as JSON; its place in metres, or in the unit of the drawing where no case gives one.

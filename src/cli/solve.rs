@@ -11,6 +11,7 @@ use crate::cli::records;
 use crate::cli::show::Show;
 use crate::record::FileHash;
 use crate::record::RecordError;
+use crate::record::cautions::ESTIMATE;
 use crate::record::sha256;
 use crate::record::store;
 use crate::report;
@@ -18,22 +19,34 @@ use crate::report::Printing;
 use crate::report::Targets;
 use crate::report::answers;
 use crate::study;
+use crate::study::StudyError;
+use std::path::Path;
+use std::path::PathBuf;
 
 /// Solves the case, prints the answers and writes the files.
 ///
 /// # Errors
 /// [`Failure`]; no file is written then, or each one whole.
 pub(super) fn run(args: &args::Solve, show: &Show) -> Result<u8, Failure> {
-    let (case, shapes) = case::load(&args.case)?;
+    let (case, shapes) = case::load(&args.case).map_err(|error| match store::read(&args.case) {
+        Ok(_) => Failure::IsRecord { path: args.case.clone() },
+        Err(_) => Failure::Case(error),
+    })?;
+    let (targets, printing) = (targets(&case), printing(&case));
+    keep_inputs(&args.case, &case, &targets)?;
     if !args.overwrite {
-        check_record(&case, &shapes)?;
+        check_targets(&case, &shapes, &targets)?;
     }
     say_defaults(&case, show);
     let progress = Progress::start(show);
     let outcome = study::run(&case, &shapes, &|event| progress.tell(event));
     progress.end();
-    let study::Outcome { mut record, surface } = outcome?;
-    let (targets, printing) = (targets(&case), printing(&case));
+    let study::Outcome { mut record, surface } = outcome.map_err(|error| match error {
+        error @ StudyError::Refused(_) => {
+            Failure::Refused { error, unit_name: case.length_name.clone(), unit: case.length_unit }
+        }
+        other => Failure::Study(other),
+    })?;
     let written = report::deliver(&mut record, &surface, &targets, &printing)?;
     if show.json {
         let mut bytes = Vec::new();
@@ -46,7 +59,7 @@ pub(super) fn run(args: &args::Solve, show: &Show) -> Result<u8, Failure> {
         show.remark(&format!("written: {}", path.display()));
     }
     for reason in &record.verdict.reasons {
-        show.remark(&format!("{}: {reason}", record.verdict.word));
+        show.remark(&format!("{}: {reason}: {ESTIMATE}", record.verdict.word));
     }
     if show.json {
         records::say_cautions(&record, show);
@@ -63,11 +76,30 @@ fn say_defaults(case: &Case, show: &Show) {
     }
 }
 
-/// Refuses if the record in the way belongs to another case or other shapes, before any work.
-fn check_record(case: &Case, shapes: &Shapes) -> Result<(), Failure> {
-    let path = &case.deliver.record;
+/// Refuses, whatever was allowed, to write over the case or a shape file.
+fn keep_inputs(path: &Path, case: &Case, targets: &Targets) -> Result<(), Failure> {
+    let folder = path.parent().unwrap_or(Path::new(""));
+    let shapes = case.shape_paths.iter().map(|shape| folder.join(shape));
+    let inputs: Vec<PathBuf> =
+        shapes.chain([path.to_owned()]).filter_map(|input| input.canonicalize().ok()).collect();
+    // A target that is not there has no such name and is in nobody's way.
+    let is_input = |target: &PathBuf| target.canonicalize().is_ok_and(|whole| inputs.contains(&whole));
+    match targets.paths().into_iter().find(is_input) {
+        Some(path) => Err(Failure::Input { path }),
+        None => Ok(()),
+    }
+}
+
+/// Refuses, before any work, if the record in the way belongs to another case or other shapes, or if
+/// any other file stands where one would be written and no record of this case beside it tells that
+/// it is an earlier result.
+fn check_targets(case: &Case, shapes: &Shapes, targets: &Targets) -> Result<(), Failure> {
+    let path = &targets.record;
     if !path.exists() {
-        return Ok(());
+        return match targets.paths().into_iter().find(|path| path.exists()) {
+            Some(path) => Err(Failure::Exists { path }),
+            None => Ok(()),
+        };
     }
     let other = |held| Err(Failure::OtherRecord { path: path.clone(), held });
     let record = match store::read(path) {

@@ -4,6 +4,7 @@
 //! Not here: any computation; the surface file (`report`).
 //! Symbols: as in the crate's table; matrices are nested row by row in the order of `electrodes`.
 
+mod agree;
 pub mod cautions;
 mod hash;
 pub mod store;

@@ -3,6 +3,7 @@
 use crate::record::Matrix;
 use crate::record::Record;
 use crate::record::SCHEMA;
+use crate::record::agree::contradiction;
 use serde::Deserialize;
 use std::collections::BTreeMap;
 use std::fs::File;
@@ -70,6 +71,21 @@ pub enum RecordError {
         key: String,
         /// Number of electrodes.
         expected: usize,
+    },
+    /// Two keys of the record contradict each other: it was changed after it was written.
+    #[error(
+        "{}: line {line}, at `{key}`: {problem}; a `record.json` as it was written is accepted, solve the case again",
+        .path.display()
+    )]
+    Contradiction {
+        /// The file.
+        path: PathBuf,
+        /// Line of the key.
+        line: usize,
+        /// The key.
+        key: String,
+        /// What contradicts what.
+        problem: String,
     },
     /// A record to be written has a matrix or list that does not fit the number of rows.
     #[error("the record does not fit its {expected} electrodes, at `{key}`; nothing was written")]
@@ -158,13 +174,21 @@ fn parse(text: &str, path: &Path) -> Result<Record, RecordError> {
         _ => {}
     }
     let record: Record = serde_json::from_str(text).map_err(|e| layout(&e))?;
-    match misfit(&record) {
-        None => Ok(record),
-        Some(key) => Err(RecordError::Size {
+    if let Some(key) = misfit(&record) {
+        return Err(RecordError::Size {
             path: path.to_owned(),
             line: line_of(text, key),
             key: key.to_owned(),
             expected: record.electrodes.len(),
+        });
+    }
+    match contradiction(&record) {
+        None => Ok(record),
+        Some((key, problem)) => Err(RecordError::Contradiction {
+            path: path.to_owned(),
+            line: line_of(text, key),
+            key: key.to_owned(),
+            problem,
         }),
     }
 }

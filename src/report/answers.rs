@@ -9,10 +9,19 @@ use crate::report::Printing;
 use crate::report::digits;
 use crate::report::form::Form;
 use crate::report::form::clean;
+use crate::report::lengths;
 use crate::report::tables;
+use std::collections::BTreeMap;
 
 /// Most points of a look printed one by one [1]; of longer ones the ends and the extremes stand here.
 const LOOK_POINTS: usize = 11;
+
+/// Most findings of slivers printed for a part [1]; a fan of a flat cap can hold hundreds.
+const SLIVERS: usize = 5;
+
+/// A charge that was given and differs from it by less than this share of the largest charge of the
+/// voltage case is rounding of the algebra [1], four digits above a double's.
+const ROUNDING_REL: f64 = 1e-12;
 
 /// The whole sheet.
 pub fn sheet(record: &Record, printing: &Printing) -> String {
@@ -41,9 +50,9 @@ pub fn sheet(record: &Record, printing: &Printing) -> String {
 
 /// Potentials, charges and energy of one voltage case.
 fn electrical_text(record: &Record, case: &VoltageCase) -> String {
-    let by_row =
-        |map: &std::collections::BTreeMap<String, f64>, name: &str| map.get(name).copied().unwrap_or(0.0);
+    let by_row = |map: &BTreeMap<String, f64>, name: &str| map.get(name).copied().unwrap_or(0.0);
     let (mut volts, mut charges) = ("  Potentials\n".to_owned(), format!("  Charges: {CHARGED}\n"));
+    let largest = case.charges_coulomb.values().fold(0.0, |top: f64, q| top.max(q.abs()));
     for name in &record.electrodes {
         let (v, bar) = (by_row(&case.potentials_volt, name), by_row(&case.potentials_bar_volt, name));
         let volt = tables::in_time(case, &|k| digits::engineering(k * v, k * bar, "V"));
@@ -53,7 +62,10 @@ fn electrical_text(record: &Record, case: &VoltageCase) -> String {
         } else {
             format!("    {name_shown}: {volt}\n")
         };
-        let (q, bar) = (by_row(&case.charges_coulomb, name), by_row(&case.charges_bar_coulomb, name));
+        let (mut q, bar) = (by_row(&case.charges_coulomb, name), by_row(&case.charges_bar_coulomb, name));
+        if bar == 0.0 && q.abs() <= ROUNDING_REL * largest {
+            q = 0.0;
+        }
         let charge = tables::in_time(case, &|k| digits::engineering(k * q, k * bar, "C"));
         charges += &format!("    {name_shown}: {charge}\n");
     }
@@ -64,7 +76,7 @@ fn electrical_text(record: &Record, case: &VoltageCase) -> String {
 
 fn look_text(look: &Look, cases: &[VoltageCase], printing: &Printing) -> String {
     let points = look.points_metre.len();
-    let mut text = format!("Look `{}`, {points} points\n", clean(&look.name));
+    let mut text = format!("Look `{}`, {}\n", clean(&look.name), counted(points, "point"));
     for case in cases {
         let (Some(volts), Some(fields)) =
             (look.potential_volt.get(&case.name), look.field_v_per_m.get(&case.name))
@@ -125,17 +137,40 @@ fn findings_text(record: &Record, printing: &Printing) -> String {
     };
     let mut findings: Vec<_> = record.findings.iter().collect();
     findings.sort_by_key(|finding| weight(&finding.severity));
+    let mut slivers: BTreeMap<&str, usize> = BTreeMap::new();
     for finding in &findings {
+        if finding.code == "sliver" {
+            let count = slivers.entry(part_of(&finding.text)).or_default();
+            *count += 1;
+            if SLIVERS < *count {
+                continue;
+            }
+        }
         let place = finding.where_metre.map_or(String::new(), |at| {
             format!(" at {} {}", digits::place(&at, printing.length), printing.length_name)
         });
         let (severity, code) = (clean(&finding.severity), clean(&finding.code));
-        text += &format!("  {severity} {code}: {}{place}\n", clean(&finding.text));
+        let sentence = lengths::in_unit(&clean(&finding.text), &printing.length_name, printing.length);
+        // Many sentences name their place themselves.
+        let named = sentence.contains(&format!(") {}", printing.length_name));
+        text += &format!("  {severity} {code}: {sentence}{}\n", if named { "" } else { place.as_str() });
+    }
+    for (part, count) in slivers.iter().filter(|(_, count)| SLIVERS < **count) {
+        text += &format!(
+            "  warning sliver: `{}`: {} more lines on slivers stand in the record\n",
+            clean(part),
+            count - SLIVERS
+        );
     }
     if findings.is_empty() {
         text += "  none\n";
     }
     text + "\n"
+}
+
+/// Name between the first backquotes of a finding's text.
+fn part_of(text: &str) -> &str {
+    text.split('`').nth(1).unwrap_or("")
 }
 
 fn parts_text(record: &Record, printing: &Printing) -> String {
@@ -173,15 +208,20 @@ fn budget_text(entries: &[BudgetLine]) -> String {
     text + "\n"
 }
 
+/// `1 round`, `2 rounds`.
+fn counted(count: usize, thing: &str) -> String {
+    format!("{count} {thing}{}", if count == 1 { "" } else { "s" })
+}
+
 fn effort_text(record: &Record) -> String {
     let effort = &record.effort;
     let mut text = format!(
-        "Effort\n  {} panels, {} unknowns, {} rounds, {} method, {} threads",
-        effort.panels,
-        effort.unknowns,
-        effort.rounds,
+        "Effort\n  {}, {}, {}, {} method, {}",
+        counted(effort.panels, "panel"),
+        counted(effort.unknowns, "unknown"),
+        counted(effort.rounds, "round"),
         clean(&effort.method),
-        effort.threads
+        counted(effort.threads, "thread")
     );
     if effort.peak_memory_bytes != 0 {
         text += &format!(", {} MB at most", digits::significant(effort.peak_memory_bytes as f64 / 1e6, 3));
@@ -196,11 +236,25 @@ fn effort_text(record: &Record) -> String {
     text + "\n\n"
 }
 
+/// A text whose numbers of full length, which a factor left behind, have six digits; the record keeps
+/// them whole.
+fn shortened(text: &str) -> String {
+    let short = |word: &str| {
+        let digits = word.chars().filter(char::is_ascii_digit).count();
+        let number = word.parse::<f64>().ok().filter(|_| FULL_LENGTH <= digits);
+        number.map_or_else(|| word.to_owned(), |number| digits::significant(number, 6))
+    };
+    text.split(' ').map(short).collect::<Vec<String>>().join(" ")
+}
+
+/// Digits from which a number is taken for the result of a product [1]; a double has up to 17.
+const FULL_LENGTH: usize = 15;
+
 /// Every word of the case as understood, defaults included.
 fn case_text(record: &Record) -> String {
     let mut text = "Case as understood, defaults included\n".to_owned();
     for (key, value) in record.case.resolved.iter().filter(|(key, _)| !key.starts_with("study.")) {
-        text += &format!("  {} = {}\n", clean(key), clean(value));
+        text += &format!("  {} = {}\n", clean(key), shortened(&clean(value)));
     }
     text + "\n"
 }

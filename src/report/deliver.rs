@@ -31,6 +31,18 @@ pub struct Targets {
     pub netlist: Option<PathBuf>,
 }
 
+impl Targets {
+    /// Every file that [`deliver`] writes, the long form of the matrices among them.
+    pub fn paths(&self) -> Vec<PathBuf> {
+        let long = self.matrix.as_deref().map(long_name);
+        let optional = [self.answers.clone(), self.matrix.clone(), long, self.netlist.clone()];
+        [self.record.clone(), self.surface.clone()]
+            .into_iter()
+            .chain(optional.into_iter().flatten())
+            .collect()
+    }
+}
+
 /// Writes every file asked for and says which, in the order written.
 ///
 /// The surface file is hashed into `record.surface_file`.  All texts are made before the first file
@@ -57,7 +69,7 @@ pub fn deliver(
         files.push((long.clone(), in_memory(&long, |out| csv::long(record, out))?));
     }
     if let Some(path) = &targets.netlist {
-        let options = netlist::Options { name: stem(path), bleeds: true };
+        let options = netlist::Options { name: netlist::subcircuit_name(record, &stem(path)), bleeds: true };
         files.push((path.clone(), in_memory(path, |out| netlist::write(record, &options, out))?));
     }
     let mut bytes = Vec::new();
@@ -95,13 +107,10 @@ fn in_memory(
 
 /// Refuses two outputs under one name: the second would silently replace the first.
 fn distinct(targets: &Targets) -> Result<(), ReportError> {
-    let long = targets.matrix.as_deref().map(long_name);
-    let optional = [&targets.answers, &targets.matrix, &long, &targets.netlist];
-    let mut names: Vec<&PathBuf> = optional.into_iter().flatten().collect();
-    names.extend([&targets.record, &targets.surface]);
+    let names = targets.paths();
     for (i, path) in names.iter().enumerate() {
         if names[..i].contains(path) {
-            return Err(ReportError::SameName { path: path.to_path_buf() });
+            return Err(ReportError::SameName { path: path.clone() });
         }
     }
     Ok(())

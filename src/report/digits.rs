@@ -81,6 +81,8 @@ pub fn significant(value: f64, digits: usize) -> String {
 
 /// A share as a percentage with three significant digits and, if asked, its sign: `+11.6 %`.
 pub fn percent(share: f64, signed: bool) -> String {
+    // Below the rounding of a double a share has no digit that means anything.
+    let share = if share.abs() < f64::EPSILON { 0.0 } else { share };
     let text = significant(100.0 * share, 3);
     let sign = if signed && 0.0 < share && share.is_finite() { "+" } else { "" };
     format!("{sign}{text} %")

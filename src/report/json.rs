@@ -4,6 +4,7 @@ use crate::record::Record;
 use crate::record::cautions::ESTIMATE;
 use crate::report::form::Form;
 use crate::report::form::REFERENCE;
+use crate::report::form::title;
 use serde_json::Value;
 use serde_json::json;
 
@@ -48,14 +49,17 @@ pub fn stress_json(record: &Record) -> String {
     format!("{object:#}\n")
 }
 
-/// Cautions, verdict and the case the record belongs to.
-fn head(record: &Record) -> Value {
+/// Program, cautions, title, verdict, accuracy and the case the record belongs to: what stands in
+/// everything said as JSON.
+pub fn head(record: &Record) -> Value {
     let mut verdict = json!(record.verdict);
     verdict["caution"] = json!(ESTIMATE);
     json!({
         "program": record.program,
         "cautions": record.cautions,
+        "title": title(record),
         "verdict": verdict,
+        "accuracy": record.accuracy,
         "case_sha256": record.case.sha256,
     })
 }

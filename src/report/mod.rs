@@ -13,6 +13,7 @@ pub mod digits;
 pub mod file;
 pub mod form;
 pub mod json;
+pub mod lengths;
 pub mod netlist;
 pub mod printing;
 pub mod stl;

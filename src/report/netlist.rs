@@ -73,6 +73,24 @@ pub fn write(record: &Record, options: &Options, out: &mut dyn Write) -> io::Res
     writeln!(out, ".ends {name}")
 }
 
+/// Longest name of a subcircuit taken from a study [1]: half a line, so that it can be typed.
+const NAME: usize = 36;
+
+/// A name for the subcircuit: number of the study, else its title, else `otherwise`.
+pub fn subcircuit_name(record: &Record, otherwise: &str) -> String {
+    let word = |key: &str| record.case.resolved.get(key).map(|text| words_joined(text));
+    let given = ["study.number", "study.title"].into_iter().filter_map(word).find(|name| !name.is_empty());
+    given.unwrap_or_else(|| otherwise.to_owned())
+}
+
+/// Letters and digits of a text, everything between them as one `_`.
+fn words_joined(text: &str) -> String {
+    let words = text.split(|c: char| !c.is_ascii_alphanumeric()).filter(|word| !word.is_empty());
+    let mut name = words.collect::<Vec<&str>>().join("_");
+    name.truncate(NAME);
+    name.trim_end_matches('_').to_owned()
+}
+
 /// Names mapped to `[a-z0-9_]` without clashes, and none of them reserved.
 pub fn pins(names: &[String]) -> Vec<String> {
     let mut taken: BTreeSet<String> = RESERVED.iter().map(|name| (*name).to_owned()).collect();

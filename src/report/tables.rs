@@ -25,9 +25,9 @@ const TRAIL: [(&str, &str); 6] = [
     ("study.left_out", "not modelled"),
 ];
 
-/// Most unbounded edges printed for one voltage case [1]: those with the highest field at the first
-/// stated distance; a body with many creases would fill pages.
-const EDGES: usize = 12;
+/// Most unbounded edges printed for one part in one voltage case [1]: those with the highest field at
+/// the first stated distance; a body with many creases would fill pages.
+const EDGES: usize = 3;
 
 /// Widest table before it goes on below [1].
 const WIDTH: usize = 110;
@@ -96,8 +96,16 @@ pub fn head_text(record: &Record) -> String {
             text += &format!("  {label}: {}\n", clean(value));
         }
     }
-    text += &format!("  by {} {}\n\nCautions\n", clean(&record.program.name), clean(&record.program.version));
-    for caution in &record.cautions {
+    text += &format!("  by {} {}\n", clean(&record.program.name), clean(&record.program.version));
+    let floats = record.rows.iter().any(|row| row.role == "floating")
+        || record.voltage_cases.iter().any(|case| !case.floating.is_empty());
+    // The caution of an estimate stands on the verdict and on every line with a limit or margin.
+    let apart = |caution: &&String| *caution != ESTIMATE && (floats || *caution != cautions::FLOATING);
+    let cautions: Vec<&String> = record.cautions.iter().filter(apart).collect();
+    if !cautions.is_empty() {
+        text += "\nCautions\n";
+    }
+    for caution in cautions {
         text += &format!("  {}\n", clean(caution));
     }
     text += &format!("\nVerdict: {}: {ESTIMATE}\n", judged(&record.verdict.word));
@@ -110,7 +118,10 @@ pub fn head_text(record: &Record) -> String {
     }
     let (asked, reached) = (record.accuracy.asked, record.accuracy.reached);
     let (asked, reached) = (digits::percent(asked, false), digits::percent(reached, false));
-    text + &format!("  bar of the capacitances: asked {asked}, reached {reached}\n\n")
+    text + &format!(
+        "  bar of the capacitances: asked {asked}, reached {reached}\n  case sha256 {}\n\n",
+        clean(&record.case.sha256)
+    )
 }
 
 /// The caution of a floating electrode with its potential in one voltage case.
@@ -148,11 +159,18 @@ pub(crate) fn maxima_text(case: &VoltageCase, edges: &[Edge], printing: &Printin
     let mut edges: Vec<&Edge> = edges.iter().filter(|edge| edge.case == case.name).collect();
     let near = |edge: &Edge| edge.field_at.first().map_or(edge.strength, |at| at.field_v_per_m).abs();
     edges.sort_by(|a, b| near(b).total_cmp(&near(a)));
-    for edge in edges.iter().take(EDGES) {
-        text += &edge_text(edge, case, printing);
+    let mut counts: BTreeMap<&str, usize> = BTreeMap::new();
+    for edge in edges {
+        let count = counts.entry(edge.part.as_str()).or_default();
+        *count += 1;
+        if *count <= EDGES {
+            text += &edge_text(edge, case, printing);
+        }
     }
-    if EDGES < edges.len() {
-        text += &format!("    {} more unbounded edges stand in the record\n", edges.len() - EDGES);
+    for (part, count) in counts.iter().filter(|(_, count)| EDGES < **count) {
+        let more = count - EDGES;
+        let plural = if more == 1 { "edge stands" } else { "edges stand" };
+        text += &format!("    {}: {more} more unbounded {plural} in the record\n", clean(part));
     }
     text
 }

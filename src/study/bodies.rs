@@ -122,8 +122,9 @@ fn select(
     let index = match shell {
         Shell::Index(k) if *k < found.len() => Ok(*k),
         Shell::Index(k) => Err(format!(
-            "`{name}`: shell {k} is asked for, but the file has {} shells; an index from 0 to {} is wanted",
+            "`{name}`: shell {k} is asked for, but the file has {} shell{}; an index from 0 to {} is wanted",
             found.len(),
+            if found.len() == 1 { "" } else { "s" },
             found.len().saturating_sub(1)
         )),
         Shell::Holding(x) => shells::holding(&found, &(x / unit)).ok_or_else(|| {

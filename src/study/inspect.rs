@@ -10,6 +10,8 @@ use crate::base::Vec3;
 use crate::case::Case;
 use crate::case::Shapes;
 use crate::geom::Triangle;
+use crate::geom::winding;
+use crate::geom::winding::Winding;
 use crate::mesh::Body;
 use crate::mesh::Welded;
 use crate::mesh::accept;
@@ -73,7 +75,7 @@ fn empty() -> Inspection {
     Inspection { findings: Vec::new(), bodies: Vec::new(), effort: None, repaired: Vec::new() }
 }
 
-/// Inspects bare STL files: each shell on its own, in the unit of the file.
+/// Inspects bare STL files: each shell with the walls of its cavities, in the unit of the file.
 ///
 /// Findings of size and unit are left out, since no unit is declared; places are in file units.
 pub fn inspect_files(shapes: &Shapes) -> Inspection {
@@ -85,14 +87,68 @@ pub fn inspect_files(shapes: &Shapes) -> Inspection {
     for (file, read) in shapes.files.iter().zip(read) {
         inspection.findings.extend(read.findings);
         let parts = shells::split(&weld::weld(&read.solids.concat(), weld::WELD_REL_TOL));
-        let many = 1 < parts.len();
-        for (k, part) in parts.iter().enumerate() {
-            let name = if many { format!("{} shell {k}", file.path) } else { file.path.clone() };
-            inspect_shell(&name, part, &mut inspection);
+        let groups = with_cavities(&parts);
+        let many = 1 < groups.len();
+        for group in groups {
+            let name = if many { format!("{} shell {}", file.path, group[0]) } else { file.path.clone() };
+            let walls: Vec<Welded> = group.iter().map(|k| parts[*k].clone()).collect();
+            inspect_shell(&name, &shells::join(&walls), &mut inspection);
         }
     }
     inspection.findings.retain(|finding| finding.code != "unit_suspicion");
     inspection
+}
+
+/// Facets of a shell whose centroids vote on whether it lies in another one [1]; odd.
+const VOTES: usize = 3;
+
+/// The shells of a file by body: each outer shell, then the walls of its cavities.
+///
+/// A shell inside an odd number of others is the wall of a cavity of the innermost of them; inside
+/// an even number it is a body of its own.  Open shells hold nothing and are no walls.
+fn with_cavities(parts: &[Welded]) -> Vec<Vec<usize>> {
+    let holders = holders(parts);
+    let mut groups: Vec<Vec<usize>> = vec![Vec::new(); parts.len()];
+    for (k, held) in holders.iter().enumerate() {
+        let innermost = held.iter().copied().max_by_key(|outer| holders[*outer].len());
+        match innermost.filter(|_| held.len() % 2 == 1) {
+            Some(outer) if holders[outer].len().is_multiple_of(2) => groups[outer].push(k),
+            _ => groups[k].insert(0, k),
+        }
+    }
+    groups.retain(|group| !group.is_empty());
+    groups
+}
+
+/// For each shell, the closed ones that hold it.
+fn holders(parts: &[Welded]) -> Vec<Vec<usize>> {
+    let boxes: Vec<(Vec3, Vec3)> = parts.iter().map(|part| weld::bounds(&part.points)).collect();
+    let closed: Vec<bool> =
+        parts.iter().map(|part| edges::open_sides(&edges::sides(&part.facets)).is_empty()).collect();
+    let mut by_x: Vec<usize> = (0..parts.len()).filter(|k| closed[*k]).collect();
+    by_x.sort_by(|&s, &t| boxes[s].0.x.total_cmp(&boxes[t].0.x));
+    let mut holders = vec![Vec::new(); parts.len()];
+    for &outer in &by_x {
+        let (lo, hi) = boxes[outer];
+        let first = by_x.partition_point(|&s| boxes[s].0.x < lo.x);
+        let within = |inner: usize| {
+            inner != outer && (0..3).all(|k| lo[k] <= boxes[inner].0[k] && boxes[inner].1[k] <= hi[k])
+        };
+        let mut prepared: Option<Winding> = None;
+        for &inner in by_x[first..].iter().take_while(|&&s| boxes[s].0.x <= hi.x).filter(|s| within(**s)) {
+            let prepared = prepared.get_or_insert_with(|| winding::prepare(shells::triangles(&parts[outer])));
+            let (facets, points) = (&parts[inner].facets, &parts[inner].points);
+            let middle = |vote: usize| {
+                facets[vote * facets.len() / VOTES].iter().map(|p| points[*p as usize] / 3.0).sum::<Vec3>()
+            };
+            // Whichever way the normals of the outer shell point.
+            let inside = (0..VOTES).filter(|v| winding::INSIDE <= prepared.at(&middle(*v)).abs()).count();
+            if VOTES < 2 * inside {
+                holders[inner].push(outer);
+            }
+        }
+    }
+    holders
 }
 
 fn inspect_shell(name: &str, part: &Welded, inspection: &mut Inspection) {
@@ -152,4 +208,49 @@ fn line_of(name: &str, welded: &Welded, closed: bool) -> BodyLine {
 fn in_units(body: &Body, unit: f64) -> Vec<[Vec3; 3]> {
     let welded = &body.surface.welded;
     welded.facets.iter().map(|f| f.map(|k| welded.points[k as usize] / unit)).collect()
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::case::ShapeFile;
+
+    /// Facets of a cube about the origin, in ASCII STL.
+    fn cube(half: f64, inward: bool) -> String {
+        let corner = |k: usize| [k & 1, k >> 1 & 1, k >> 2 & 1].map(|b| if b == 1 { half } else { -half });
+        let faces = [[0, 2, 3, 1], [4, 5, 7, 6], [0, 1, 5, 4], [2, 6, 7, 3], [0, 4, 6, 2], [1, 3, 7, 5]];
+        let facets = faces.iter().flat_map(|f| [[f[0], f[1], f[2]], [f[0], f[2], f[3]]]);
+        let facet = |mut f: [usize; 3]| {
+            if inward {
+                f.swap(1, 2);
+            }
+            let lines = f.map(|k| format!("vertex {} {} {}\n", corner(k)[0], corner(k)[1], corner(k)[2]));
+            format!("facet normal 0 0 0\nouter loop\n{}endloop\nendfacet\n", lines.concat())
+        };
+        facets.map(facet).collect()
+    }
+
+    fn inspected(cubes: &[(f64, bool)]) -> Inspection {
+        let facets: String = cubes.iter().map(|(half, inward)| cube(*half, *inward)).collect();
+        let bytes = format!("solid a\n{facets}endsolid a\n").into_bytes();
+        inspect_files(&Shapes { files: vec![ShapeFile { path: "a.stl".to_owned(), bytes }] })
+    }
+
+    #[test]
+    fn a_hollow_body_is_one_body_with_a_cavity_wall() {
+        let found = inspected(&[(2.0, false), (1.0, true)]);
+        assert!(found.findings.iter().all(|f| f.code != "shell_turned"), "{:?}", found.findings);
+        assert!(found.findings.iter().any(|f| f.code == "cavity_wall"), "{:?}", found.findings);
+        assert_eq!((found.bodies.len(), found.bodies[0].name.as_str()), (1, "a.stl"));
+        assert!((found.bodies[0].volume - 56.0).abs() < 1e-9, "4^3 less 2^3: {}", found.bodies[0].volume);
+        assert_eq!(found.repaired[0].1.len(), 24, "the body is written whole");
+    }
+
+    #[test]
+    fn a_body_in_a_cavity_is_one_of_its_own() {
+        let found = inspected(&[(1.0, false), (4.0, false), (2.0, true)]);
+        let names: Vec<&str> = found.bodies.iter().map(|body| body.name.as_str()).collect();
+        assert_eq!(names, ["a.stl shell 0", "a.stl shell 1"]);
+        assert!((found.bodies[1].volume - 448.0).abs() < 1e-9, "8^3 less 4^3: {}", found.bodies[1].volume);
+    }
 }

@@ -15,6 +15,7 @@ mod state;
 mod voltage;
 
 use crate::base::Finding;
+use crate::base::Severity;
 use crate::record::Record;
 use crate::record::SurfaceTable;
 
@@ -87,7 +88,7 @@ pub struct BodyLine {
 #[derive(Debug, thiserror::Error)]
 pub enum StudyError {
     /// The geometry is refused; all findings, the refusals among them.
-    #[error("geometry refused: {} problems", .0.len())]
+    #[error("geometry refused: {}", problems(.0))]
     Refused(Vec<Finding>),
     /// The first round would not fit.
     #[error(
@@ -104,4 +105,10 @@ pub enum StudyError {
     /// The linear system could not be solved.
     #[error("the linear system is singular: {0}")]
     Singular(String),
+}
+
+/// `1 problem`, `3 problems`: the refusals among the findings.
+fn problems(findings: &[Finding]) -> String {
+    let count = findings.iter().filter(|finding| finding.severity == Severity::Refusal).count();
+    format!("{count} problem{}", if count == 1 { "" } else { "s" })
 }

@@ -262,3 +262,10 @@ fn files_are_read_once_and_missing_ones_are_all_told() {
     let missing = case::load(&dir.path().join("none.toml")).unwrap_err();
     assert!(missing.is_unread() && missing.to_string().contains("none.toml"), "{missing}");
 }
+
+#[test]
+fn a_plus_in_the_name_of_an_electrode_is_refused() {
+    let text = SMALL.replace("name = \"a\"", "name = \"a+b\"");
+    let said = case::parse(&text, Path::new("c.toml")).unwrap_err().to_string();
+    assert!(said.contains("line 5") && said.contains("a name without `+`"), "{said}");
+}

@@ -152,13 +152,82 @@ fn a_record_of_another_case_stays_unless_told_otherwise() {
 }
 
 #[test]
+fn a_file_that_is_no_earlier_result_stays_unless_told_otherwise() {
+    let dir = tempfile::tempdir().unwrap();
+    let case = CASE.to_owned() + "[deliver]\nanswers = \"a.txt\"\nmatrix = \"m.csv\"\nnetlist = \"n.cir\"\n";
+    fs::write(dir.path().join("case.toml"), case).unwrap();
+    fs::write(dir.path().join("ball.stl"), "solid x\nendsolid x\n").unwrap();
+    let folder = dir.path().join("out/case");
+    fs::create_dir_all(&folder).unwrap();
+    for name in ["surface.vtu", "a.txt", "m.csv", "m_long.csv", "n.cir"] {
+        let path = folder.join(name);
+        fs::write(&path, "mine").unwrap();
+        let (code, _, err) = told(run(dir.path(), &["solve", "case.toml"]));
+        assert_eq!(code, 1, "{name}: {err}");
+        assert!(err.contains(name) && err.contains("--overwrite"), "{name}: {err}");
+        assert_eq!(fs::read_to_string(&path).unwrap(), "mine", "{name}");
+        let (code, _, err) = told(run(dir.path(), &["solve", "case.toml", "--overwrite"]));
+        assert_eq!(code, 2, "{name}: the empty ball is refused now: {err}");
+        fs::remove_file(&path).unwrap();
+    }
+}
+
+#[test]
+fn a_shape_is_never_written_over() {
+    let dir = tempfile::tempdir().unwrap();
+    let case = CASE.to_owned() + "[deliver]\nfolder = \".\"\nanswers = \"ball.stl\"\n";
+    fs::write(dir.path().join("case.toml"), case).unwrap();
+    fs::write(dir.path().join("ball.stl"), "solid x\nendsolid x\n").unwrap();
+    let (code, _, err) = told(run(dir.path(), &["solve", "case.toml", "--overwrite"]));
+    assert_eq!(code, 1, "{err}");
+    assert!(err.contains("ball.stl: read by this case"), "{err}");
+}
+
+#[test]
+fn refusals_alone_are_counted_as_problems() {
+    let dir = tempfile::tempdir().unwrap();
+    fs::write(dir.path().join("case.toml"), CASE).unwrap();
+    // A tetrahedron without its last facet, and a facet given twice: one refusal, one repair told.
+    let corners = ["0 0 0", "10 0 0", "0 10 0", "0 0 10"];
+    let facets = [[0, 2, 1], [0, 1, 3], [0, 3, 2], [0, 3, 2]].map(|facet| {
+        let lines = facet.map(|k| format!("vertex {}\n", corners[k])).concat();
+        format!("facet normal 0 0 0\nouter loop\n{lines}endloop\nendfacet\n")
+    });
+    fs::write(dir.path().join("ball.stl"), format!("solid x\n{}endsolid x\n", facets.concat())).unwrap();
+    let (code, _, err) = told(run(dir.path(), &["solve", "case.toml"]));
+    assert_eq!(code, 2, "{err}");
+    assert!(err.contains("note: ") && err.contains("geometry refused: 1 problem\n"), "{err}");
+}
+
+#[test]
+fn a_record_or_case_in_the_wrong_place_is_recognised() {
+    let dir = tempfile::tempdir().unwrap();
+    fs::write(dir.path().join("r.json"), RECORD).unwrap();
+    fs::write(dir.path().join("case.txt"), CASE).unwrap();
+    for (words, said) in [
+        (["solve", "r.json"], "this is a record"),
+        (["inspect", "r.json"], "this is a record"),
+        (["inspect", "case.txt"], "this looks like a case"),
+    ] {
+        let (code, _, err) = told(run(dir.path(), &words));
+        assert_eq!(code, 1, "{err}");
+        assert!(err.contains(said), "{err}");
+    }
+}
+
+#[test]
 fn a_record_answers_in_text_csv_and_json() {
     let dir = tempfile::tempdir().unwrap();
     fs::write(dir.path().join("r.json"), RECORD).unwrap();
     let (code, out, err) = told(run(dir.path(), &["matrix", "r.json"]));
     assert_eq!(code, 0, "{err}");
     assert!(out.contains("Maxwell capacitance matrix (charge per volt)") && out.contains("111."), "{out}");
-    assert!(err.contains("caution: estimate for comparing designs"), "{err}");
+    assert!(err.is_empty(), "the cautions stand in the text: {err}");
+    for words in
+        ["Untitled study", "Verdict: not met: estimate for", "asked 0.5 %, reached 0.6 %", "case sha256 00"]
+    {
+        assert!(out.contains(words), "{words}: {out}");
+    }
     let (_, out, err) = told(run(dir.path(), &["matrix", "r.json", "--csv", "--form", "mutual", "--quiet"]));
     assert!(out.contains("earth_farad") && err.is_empty(), "{out}{err}");
     let (_, out, _) = told(run(dir.path(), &["matrix", "r.json", "--json", "--form", "charge-per-volt"]));
@@ -168,7 +237,22 @@ fn a_record_answers_in_text_csv_and_json() {
     let value: serde_json::Value = serde_json::from_str(&out).unwrap();
     assert_eq!(value.as_array().map(Vec::len), Some(3));
     let (code, out, _) = told(run(dir.path(), &["stress", "r.json"]));
-    assert_eq!((code, out.as_str()), (4, ""), "codes of the record: 4 before 3");
+    assert_eq!(code, 4, "codes of the record: 4 before 3");
+    assert!(out.contains("Verdict: not met") && out.contains("No voltage case"), "{out}");
+    let (_, out, _) = told(run(dir.path(), &["stress", "r.json", "--json"]));
+    let value: serde_json::Value = serde_json::from_str(&out).unwrap();
+    assert_eq!(
+        (value["verdict"]["word"].as_str(), value["accuracy"]["asked"].as_f64()),
+        (Some("not_met"), Some(0.005))
+    );
+    fs::write(
+        dir.path().join("r.json"),
+        RECORD.replace("\"mutual_farad\": [[0.0]]", "\"mutual_farad\": [[1e-12]]"),
+    )
+    .unwrap();
+    let (code, out, err) = told(run(dir.path(), &["matrix", "r.json"]));
+    assert_eq!((code, out.as_str()), (6, ""), "a record that contradicts itself");
+    assert!(err.contains("at `mutual_farad`"), "{err}");
 }
 
 #[test]
@@ -180,6 +264,13 @@ fn a_netlist_goes_to_the_terminal_or_to_a_new_file() {
     assert!(out.contains(".subckt") && out.contains("Rbleed"), "{out}");
     let (_, out, _) = told(run(dir.path(), &["netlist", "r.json", "--no-bleed"]));
     assert!(!out.contains("\nRbleed"), "{out}");
+    let (_, out, _) = told(run(dir.path(), &["netlist", "r.json", "--json"]));
+    let value: serde_json::Value = serde_json::from_str(&out).unwrap();
+    assert_eq!(value["pins"], serde_json::json!(["ball_1", "earth"]));
+    let titled = RECORD.replace("\"resolved\": {", "\"resolved\": { \"study.title\": \"Ball, 1 m (test)\",");
+    fs::write(dir.path().join("t.json"), titled).unwrap();
+    let (_, out, _) = told(run(dir.path(), &["netlist", "t.json"]));
+    assert!(out.contains(".subckt ball_1_m_test ball_1 earth"), "{out}");
     let words = ["netlist", "r.json", "-o", "new/n.cir"];
     let (code, out, err) = told(run(dir.path(), &words));
     assert_eq!((code, out.as_str()), (0, ""), "{err}");

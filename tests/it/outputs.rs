@@ -37,7 +37,7 @@ fn a_record_reads_back_to_the_same_bits() {
     let mut record = fixtures::record();
     let mut bits = 0x9E37_79B9_7F4A_7C15_u64;
     for _ in 0..200 {
-        for value in record.capacitance_farad.iter_mut().flatten() {
+        for value in record.capacitance_bar_farad.iter_mut().flatten() {
             bits = bits.wrapping_mul(6_364_136_223_846_793_005).wrapping_add(1);
             let any = f64::from_bits(bits);
             *value = if any.is_finite() { any } else { 5e-324 };
@@ -93,6 +93,35 @@ fn complaints_about_a_record_name_line_and_key() {
         matches!(store::read(Path::new("/nowhere/record.json")), Err(RecordError::Read { .. })),
         "no file"
     );
+}
+
+#[test]
+fn a_record_that_contradicts_itself_is_not_read() {
+    let text = stored(&fixtures::record());
+    let complaint = |change: &dyn Fn(&mut serde_json::Value)| {
+        let mut value: serde_json::Value = serde_json::from_str(&text).unwrap();
+        change(&mut value);
+        read_back(&serde_json::to_string_pretty(&value).unwrap()).unwrap_err().to_string()
+    };
+    let said = complaint(&|v| v["mutual_farad"][0][1] = 1.3e-12.into());
+    assert!(said.contains("at `mutual_farad`: `ball` and `tap` have 1.3e-12 F, but 1.237"), "{said}");
+    let said = complaint(&|v| v["capacitance_farad"][2][2] = 5.4e-12.into());
+    assert!(said.contains("at `earth_farad`: `foot` has 4.42"), "{said}");
+    let said = complaint(&|v| v["earth_share"][0] = 0.5.into());
+    assert!(said.contains("at `earth_share`: `ball` has 5e-1, but 7.59"), "{said}");
+    let said = complaint(&|v| v["verdict"]["word"] = "met".into());
+    assert!(said.contains("the verdict `met` does not fit the codes [4]"), "{said}");
+    let said = complaint(&|v| v["verdict"]["word"] = "fine".into());
+    assert!(said.contains("`fine` is no verdict; met, not_met or not_decided is"), "{said}");
+    let said = complaint(&|v| {
+        v["verdict"]["word"] = "met".into();
+        v["verdict"]["codes"] = serde_json::json!([]);
+    });
+    assert!(said.contains("at `codes`: a field limit is not met or not decided, but 4"), "{said}");
+    let said = complaint(&|v| v["checks"][0]["pass"] = false.into());
+    assert!(said.contains("a check failed, but 5 is not among [4]"), "{said}");
+    let said = complaint(&|v| v["accuracy"]["reached"] = 0.02.into());
+    assert!(said.contains("wider than the one asked, but 3"), "{said}");
 }
 
 #[test]
@@ -260,6 +289,24 @@ fn names_with_line_breaks_cannot_forge_lines() {
     ] {
         assert!(!text.contains("\nV1") && !text.contains("\n.include") && !text.contains('\r'), "{text}");
     }
+}
+
+#[test]
+fn many_slivers_and_edges_are_counted_and_few_printed() {
+    let mut record = fixtures::record();
+    let edge = record.edges[0].clone();
+    record.edges.extend(vec![edge; 6]);
+    let mut sliver = record.findings[0].clone();
+    (sliver.code, sliver.text) =
+        ("sliver".into(), "`tap`: sliver at (0, 0.03, 1e-5) m: 2000 times as long".into());
+    record.findings.extend(vec![sliver; 9]);
+    record.case.resolved.insert("electrode.tap.turn".into(), "0.6108652381980153 rad about 0.25".into());
+    let text = answers::sheet(&record, &Printing::default());
+    assert_eq!(text.matches("unbounded at edge, 90 degrees").count(), 3, "{text}");
+    assert!(text.contains("foot: 4 more unbounded edges stand in the record"), "{text}");
+    assert_eq!(text.matches("`tap`: sliver at (0, 30, 0.01) mm: 2000 times").count(), 5, "{text}");
+    assert!(text.contains("`tap`: 4 more lines on slivers stand in the record"), "{text}");
+    assert!(text.contains("turn = 0.610865 rad about 0.25\n"), "{text}");
 }
 
 #[test]
