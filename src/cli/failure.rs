@@ -79,12 +79,6 @@ pub(super) enum Failure {
         /// What stands there.
         held: &'static str,
     },
-    /// A verb that this build cannot do.
-    #[error("`{verb}` is not available in this build; the other verbs are")]
-    NotYet {
-        /// The verb.
-        verb: &'static str,
-    },
 }
 
 impl Failure {
@@ -93,7 +87,8 @@ impl Failure {
         match self {
             Failure::Case(error) if error.is_unread() => cli::FILE,
             Failure::Study(StudyError::Refused(_)) | Failure::Refused { .. } => cli::REFUSED,
-            Failure::Study(StudyError::Memory { .. }) => cli::ACCURACY,
+            // Nothing was computed and nothing is written, so this is not the accuracy code.
+            Failure::Study(StudyError::Memory { .. }) => cli::BAD_REQUEST,
             Failure::Study(StudyError::Singular(_)) => cli::CHECK,
             Failure::Report(ReportError::SameName { .. }) => cli::BAD_REQUEST,
             Failure::Report(ReportError::Record { .. } | ReportError::Table { .. }) => cli::CHECK,
@@ -105,8 +100,7 @@ impl Failure {
             | Failure::IsRecord { .. }
             | Failure::LooksLikeCase { .. }
             | Failure::Exists { .. }
-            | Failure::OtherRecord { .. }
-            | Failure::NotYet { .. } => cli::BAD_REQUEST,
+            | Failure::OtherRecord { .. } => cli::BAD_REQUEST,
         }
     }
 

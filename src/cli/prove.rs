@@ -12,19 +12,17 @@ use serde_json::json;
 /// Runs the exact cases; exit code 5 if one lies outside its bar.
 ///
 /// # Errors
-/// [`Failure`]; also where there is nothing to run, since that proves nothing.
+/// [`Failure`] where a case gives no result at all.
 pub(super) fn run(show: &Show) -> Result<u8, Failure> {
     let lines = study::prove()?;
-    if lines.is_empty() {
-        return Err(Failure::NotYet { verb: "prove" });
-    }
     if show.json {
         let values: Vec<Value> = lines.iter().map(as_json).collect();
         show.result(&format!("{:#}", json!({ "cases": values })))?;
     } else {
         show.result(&text(&lines))?;
     }
-    Ok(if lines.iter().all(|line| line.pass) { cli::DONE } else { cli::CHECK })
+    // An empty list proves nothing.
+    Ok(if !lines.is_empty() && lines.iter().all(|line| line.pass) { cli::DONE } else { cli::CHECK })
 }
 
 fn as_json(line: &ProveLine) -> Value {
