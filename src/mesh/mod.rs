@@ -6,6 +6,7 @@
 
 pub mod accept;
 pub mod assembly;
+mod chart;
 mod contact;
 pub mod edges;
 mod expose;
@@ -29,6 +30,8 @@ mod stl_ascii;
 pub mod stl_error;
 pub mod weld;
 
+pub use chart::Chart;
+pub use chart::Spot;
 pub use place::place;
 
 use crate::base::Finding;

@@ -9,8 +9,10 @@ mod place;
 use crate::base::Plane;
 use crate::geom::Triangle;
 use crate::mesh::Assembly;
+use crate::mesh::Chart;
 use crate::mesh::Net;
 use crate::mesh::Piece;
+use crate::mesh::Spot;
 use std::sync::Arc;
 
 /// Panels of one round; panel `p` stands at index `p` of every array.
@@ -100,6 +102,28 @@ pub fn from_origins(assembly: Arc<Assembly>, plane: Option<Plane>, origins: &[Or
 }
 
 impl Panels {
+    /// The rebuilt surface over panel `p` at barycentric coordinates `w` of the panel.
+    pub fn spot(&self, p: usize, w: [f64; 3]) -> Spot {
+        self.chart(p).spot(self.in_chart(p, w))
+    }
+
+    /// Principal curvatures of the rebuilt surface over panel `p` at barycentric coordinates `w` of the
+    /// panel, positive where the metal bulges out [1/m].
+    pub fn curvatures(&self, p: usize, w: [f64; 3]) -> [f64; 2] {
+        self.chart(p).curvatures(self.in_chart(p, w))
+    }
+
+    fn chart(&self, p: usize) -> Chart {
+        let surface = &self.assembly.bodies[self.body[p] as usize].surface;
+        let facet = self.facet[p];
+        let corners = surface.welded.facets[facet as usize].map(|k| surface.welded.points[k as usize]);
+        Chart { facet, corners, normals: surface.normals[facet as usize] }
+    }
+
+    fn in_chart(&self, p: usize, w: [f64; 3]) -> [f64; 3] {
+        [0, 1, 2].map(|k| (0..3).map(|c| w[c] * self.bary[p][c][k]).sum())
+    }
+
     /// Where panel `p` comes from.
     pub fn origin(&self, p: usize) -> Origin {
         Origin { net: self.net[p], body: self.body[p], facet: self.facet[p], bary: self.bary[p] }
