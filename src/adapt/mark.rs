@@ -1,7 +1,10 @@
 //! Which panels to cut, and how far the demand is reached.
 
+use super::split;
 use crate::base::threads;
 use crate::physics::estimate::Estimate;
+use crate::physics::faceting;
+use crate::physics::permittivity;
 use crate::physics::solved::Bar;
 use crate::physics::solved::Solved;
 use crate::physics::solved::unit_weight;
@@ -63,7 +66,11 @@ pub fn reached(matrix: &[Vec<f64>], bars: &(Vec<Vec<Bar>>, Vec<Bar>)) -> f64 {
 /// Cuts for the next round: the panels that carry [`BULK`] of the indicators, at most `room` of them,
 /// each along its steepest edge.
 pub(super) fn cuts(solved: &Solved, room: usize) -> Vec<(usize, usize)> {
-    let indicators = indicators(solved);
+    let told = indicators(solved);
+    let bends: Vec<f64> =
+        (0..told.len()).map(|p| (0..solved.n_rows()).map(|i| bend(solved, p, i)).sum()).collect();
+    let bent: Vec<bool> = told.iter().zip(&bends).map(|(told, bend)| told < bend).collect();
+    let indicators: Vec<f64> = told.iter().zip(&bends).map(|(told, bend)| told + bend).collect();
     let mut order: Vec<usize> = (0..indicators.len()).collect();
     order.sort_by(|a, b| indicators[*b].total_cmp(&indicators[*a]).then(a.cmp(b)));
     let total: f64 = indicators.iter().sum();
@@ -80,7 +87,24 @@ pub(super) fn cuts(solved: &Solved, room: usize) -> Vec<(usize, usize)> {
     marked.sort_unstable();
     let weight: Vec<f64> = (0..solved.n_rows()).map(|i| 1.0 / solved.matrix[i][i].abs().sqrt()).collect();
     let edge = |p: usize| Estimate::steepest_edge(&solved.panels, &solved.residuals, &weight, p);
-    marked.into_iter().map(|p| (p, edge(p))).collect()
+    let side = |p: usize| {
+        let bend = || if bent[p] { split::most_bent(&solved.panels, p).0 } else { edge(p) };
+        split::overbent(&solved.panels, p).unwrap_or_else(bend)
+    };
+    marked.into_iter().map(|p| (p, side(p))).collect()
+}
+
+/// Share in the indicator of what a panel does not follow of its surface [1], against what its residuals
+/// tell: as in the bar.
+fn bend(solved: &Solved, p: usize, i: usize) -> f64 {
+    let density = solved.charges.density[i][p];
+    permittivity(solved.eps_r)
+        * faceting::BULGE_SHARE
+        * solved.panels.offset[p].abs()
+        * solved.panels.triangles[p].area()
+        * density
+        * density
+        / scale(&solved.matrix, i, Some(i))
 }
 
 /// Share of every panel in the bars, each relative to what is allowed [1].

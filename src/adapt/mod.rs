@@ -8,6 +8,7 @@
 mod mark;
 mod run;
 mod split;
+mod start;
 
 pub use mark::Demand;
 pub use mark::over_floor;
@@ -18,5 +19,5 @@ pub use run::Limits;
 pub use run::Round;
 pub use run::Stop;
 pub use run::run;
-pub use split::at_least;
 pub use split::bisect;
+pub use start::start;

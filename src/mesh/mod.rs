@@ -6,12 +6,17 @@
 
 pub mod accept;
 pub mod assembly;
+pub mod borders;
 mod chart;
+pub mod coarsen;
 mod contact;
 pub mod edges;
 mod expose;
 mod expose_split;
+mod faces;
 mod flat;
+pub mod form;
+mod form_fit;
 pub mod holes;
 mod joints;
 mod listing;
@@ -20,6 +25,8 @@ mod orient;
 mod parts;
 pub mod place;
 mod plane_cut;
+pub mod recognise;
+mod region;
 pub mod repair;
 pub mod selfcross;
 pub mod shells;
@@ -33,6 +40,8 @@ pub mod weld;
 pub use chart::Chart;
 pub use chart::Spot;
 pub use place::place;
+
+pub use recognise::Patches;
 
 use crate::base::Finding;
 use crate::base::Vec3;
@@ -74,6 +83,8 @@ pub struct Surface {
     /// Recovered unit normal of the drawn surface at each corner of each facet; equals the
     /// facet's own normal where the corner is a crease or the surface is taken as drawn.
     pub normals: Vec<[Vec3; 3]>,
+    /// What its parts are: planes, cylinders and the like, and the curves between them.
+    pub patches: Patches,
     /// Edges where smooth patches end, and rims of sheets.
     pub creases: Vec<Crease>,
     /// The straight sides of a rim are the shape, not chords of a round one.

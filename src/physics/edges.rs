@@ -53,7 +53,7 @@ pub fn sharp_edges(solved: &Solved, field: &[f64]) -> Vec<SharpEdge> {
     let mut found = Vec::new();
     let mut beside: Vec<Vec<Vec<usize>>> =
         panels.assembly.bodies.iter().map(|b| vec![Vec::new(); b.surface.welded.facets.len()]).collect();
-    (0..panels.len()).for_each(|p| beside[panels.body[p] as usize][panels.facet[p] as usize].push(p));
+    (0..panels.len()).for_each(|p| beside[panels.body[p] as usize][panels.facet(p) as usize].push(p));
     for (body, part) in panels.assembly.bodies.iter().enumerate() {
         let share = if part.surface.sheet { 0.5 } else { 1.0 };
         let sharp = |crease: &&Crease| sharp_angle(&part.surface, crease) < SEAM;

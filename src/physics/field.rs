@@ -351,12 +351,7 @@ fn highest(c: [f64; 6]) -> (f64, f64) {
 /// Principal curvatures from a linear fit of the recovered normals over a patch, `n ≈ n₀ + S x` [1/m].
 fn curvature(solved: &Solved, near: &[(f64, usize)], [x0, e, f]: [Vec3; 3]) -> [f64; 2] {
     let panels = &solved.panels;
-    let normal = |p: usize| {
-        let surface = &panels.assembly.bodies[panels.body[p] as usize].surface;
-        let [a, b, c] = surface.normals[panels.facet[p] as usize];
-        let mean = |k: usize| panels.bary[p].iter().map(|w| w[k]).sum::<f64>() / 3.0;
-        (a * mean(0) + b * mean(1) + c * mean(2)).normalize()
-    };
+    let normal = |p: usize| panels.spot(p, [1.0 / 3.0; 3]).normal;
     let far = |(_, p): &(f64, usize)| (panels.triangles[*p].centroid() - x0).norm();
     let reach = near.iter().map(far).fold(f64::MIN_POSITIVE, f64::max);
     let a = DMatrix::from_fn(near.len(), 3, |r, c| {

@@ -104,7 +104,8 @@ fn surface_panel(panels: &Panels, x: &Vec3) -> Option<usize> {
     let near = (0..panels.len()).filter(solid).filter(|p| {
         let tri = &panels.triangles[*p];
         let side = if 0.0 < tri.normal().dot(&(x - tri.centroid())) { ABOVE } else { UNDER };
-        distance(*p) <= side * panels.offset[*p].abs() + ROUNDING * tri.longest_edge()
+        distance(*p)
+            <= side * panels.offset[*p].abs().max(panels.drawn[*p].abs()) + ROUNDING * tri.longest_edge()
     });
     near.min_by(|a, b| distance(*a).total_cmp(&distance(*b)))
 }

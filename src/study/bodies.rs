@@ -17,7 +17,6 @@ use crate::mesh::repair;
 use crate::mesh::shells;
 use crate::mesh::size;
 use crate::mesh::smooth;
-use crate::mesh::smooth::Smooth;
 use crate::mesh::stl;
 use crate::mesh::weld;
 
@@ -138,9 +137,9 @@ fn select(
 /// Fills normals and creases and tells the sharpest ridge that is taken for faceting.
 fn smoothed(surface: Surface, electrode: &Electrode, findings: &mut Vec<Finding>) -> Surface {
     let angle = electrode.crease_angle.unwrap_or(smooth::CREASE_ANGLE);
-    let Smooth { normals, creases, sharpest_smoothed } = match electrode.surface {
-        SurfaceKind::Rebuilt => smooth::recover(&surface.welded, angle),
-        SurfaceKind::AsDrawn => smooth::as_drawn(&surface.welded),
+    let (surface, sharpest_smoothed) = match electrode.surface {
+        SurfaceKind::Rebuilt => smooth::rebuild(surface, angle),
+        SurfaceKind::AsDrawn => (smooth::keep(surface), None),
     };
     if let Some((turn, at)) = sharpest_smoothed {
         findings.push(Finding {
@@ -156,6 +155,5 @@ fn smoothed(surface: Surface, electrode: &Electrode, findings: &mut Vec<Finding>
             place: Some(at),
         });
     }
-    let rims_as_drawn = electrode.surface == SurfaceKind::AsDrawn;
-    Surface { normals, creases, rims_as_drawn, ..surface }
+    surface
 }

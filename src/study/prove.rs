@@ -11,7 +11,6 @@ use crate::adapt::Limits;
 use crate::base::Plane;
 use crate::base::Vec3;
 use crate::mesh::Body;
-use crate::mesh::Surface;
 use crate::mesh::accept;
 use crate::mesh::assembly;
 use crate::mesh::smooth;
@@ -154,7 +153,7 @@ fn solved(bodies: Vec<Vec<[Vec3; 3]>>, sheet: bool, plane: Option<Plane>) -> Res
     let accepted: Result<Vec<Body>, StudyError> =
         bodies.iter().enumerate().map(|(n, facets)| body(facets, sheet, &format!("body {n}"))).collect();
     let assembly = assembly::expose(accepted?, &[], plane.as_ref()).map_err(StudyError::Refused)?;
-    let start = adapt::at_least(FIRST_PANELS, panel::build(Arc::new(assembly), plane));
+    let start = adapt::start(FIRST_PANELS, None, panel::build(Arc::new(assembly), plane));
     let limits = Limits { max_panels: Some(MOST_PANELS), time: None, memory: f64::INFINITY };
     let demand = Demand { capacitance: DEMAND };
     let finished = adapt::run(start, 1.0, demand, &limits, &|_| {});
@@ -163,8 +162,6 @@ fn solved(bodies: Vec<Vec<[Vec3; 3]>>, sheet: bool, plane: Option<Plane>) -> Res
 
 fn body(facets: &[[Vec3; 3]], sheet: bool, name: &str) -> Result<Body, StudyError> {
     let (surface, _) = accept::body(facets, sheet, name).map_err(StudyError::Refused)?;
-    let smooth = smooth::recover(&surface.welded, smooth::CREASE_ANGLE);
-    let surface =
-        Surface { normals: smooth.normals, creases: smooth.creases, rims_as_drawn: false, ..surface };
+    let (surface, _) = smooth::rebuild(surface, smooth::CREASE_ANGLE);
     Ok(Body { name: name.to_owned(), surface })
 }

@@ -105,7 +105,7 @@ fn refine(
     progress: &(dyn Fn(&Event) + Sync),
 ) -> Result<Finished, StudyError> {
     let plane = case.earth_plane.as_ref().map(|earth| earth.plane);
-    let start = adapt::at_least(FIRST_PANELS, panel::build(assembly, plane));
+    let start = adapt::start(FIRST_PANELS, case.accuracy.max_panels, panel::build(assembly, plane));
     let limits = Limits {
         max_panels: case.accuracy.max_panels,
         time: case.accuracy.time_limit,

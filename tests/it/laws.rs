@@ -156,7 +156,7 @@ fn an_electrode_in_a_vessel_sees_nothing_but_the_vessel() {
 fn permittivity_scales_capacitances_and_bars() {
     let bodies = three_bodies();
     let assembly = Arc::new(solving::assembled(&bodies, &[], None));
-    let panels = adapt::at_least(solving::FIRST_PANELS, panel::build(assembly, None));
+    let panels = adapt::start(solving::FIRST_PANELS, None, panel::build(assembly, None));
     let of = |eps_r: f64| physics::solved::solve(panels.clone(), eps_r).unwrap();
     let (vacuum, oil) = (of(1.0), of(2.25));
     assert_same_matrix(&oil.matrix, |i, j| 2.25 * vacuum.matrix[i][j], 1e-13);

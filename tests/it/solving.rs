@@ -8,7 +8,6 @@ use amberskin::adapt::Limits;
 use amberskin::base::Plane;
 use amberskin::mesh::Assembly;
 use amberskin::mesh::Body;
-use amberskin::mesh::Surface;
 use amberskin::mesh::accept;
 use amberskin::mesh::assembly;
 use amberskin::mesh::smooth;
@@ -43,9 +42,7 @@ fn named(facets: impl IntoIterator<Item = Vec<Facet>>, sheet: bool) -> Vec<TestB
 pub(crate) fn assembled(bodies: &[TestBody], bonds: &[Vec<String>], plane: Option<&Plane>) -> Assembly {
     let accepted = |body: &TestBody| {
         let (surface, _) = accept::body(&body.facets, body.sheet, &body.name).unwrap();
-        let smooth = smooth::recover(&surface.welded, smooth::CREASE_ANGLE);
-        let surface =
-            Surface { normals: smooth.normals, creases: smooth.creases, rims_as_drawn: false, ..surface };
+        let (surface, _) = smooth::rebuild(surface, smooth::CREASE_ANGLE);
         Body { name: body.name.clone(), surface }
     };
     assembly::expose(bodies.iter().map(accepted).collect(), bonds, plane).unwrap()
@@ -62,7 +59,7 @@ pub(crate) struct Asked {
 
 /// Refined until what is asked is reached.
 pub(crate) fn refined(assembly: Assembly, plane: Option<Plane>, asked: Asked) -> Finished {
-    let start = adapt::at_least(FIRST_PANELS, panel::build(Arc::new(assembly), plane));
+    let start = adapt::start(FIRST_PANELS, None, panel::build(Arc::new(assembly), plane));
     let limits = Limits { max_panels: Some(asked.max_panels), time: None, memory: 4e9 };
     adapt::run(start, 1.0, Demand { capacitance: asked.demand }, &limits, &|_| {}).unwrap()
 }

@@ -1,0 +1,61 @@
+//! The panels of the first round.
+
+use super::split;
+use crate::panel::Panels;
+use crate::physics::gap;
+
+/// Most that the surface may turn between the corners of a panel [rad]: 25°.
+const MOST_TURN: f64 = 0.44;
+
+/// Most that the surface may depart from a panel, in distances to the next conductor [1].
+const GAP_SHARE: f64 = 0.1;
+
+/// Most passes; each halves what is cut.
+const MOST_PASSES: usize = 40;
+
+/// Cuts panels until each body has at least `count` of them, the surface turns little over each, and
+/// none departs from it by a good part of the gap at which it stands; `most` panels at most, if given.
+///
+/// Cuts go across the way in which the surface bends, so a panel of a cylinder becomes long and narrow.
+pub fn start(count: usize, most: Option<usize>, mut panels: Panels) -> Panels {
+    for _ in 0..MOST_PASSES {
+        let mut held = vec![0_usize; panels.assembly.bodies.len()];
+        panels.body.iter().for_each(|body| held[*body as usize] += 1);
+        let gaps = gap::gaps(&panels);
+        let mut cuts: Vec<(usize, usize)> = Vec::new();
+        for (p, gap) in gaps.iter().enumerate() {
+            let (edge, bend) = split::most_bent(&panels, p);
+            if let Some(edge) = split::overbent(&panels, p) {
+                cuts.push((p, edge));
+            } else if 0.0 < bend && (GAP_SHARE * gap < 2.0 * lift(&panels, p) || MOST_TURN < turn(&panels, p))
+            {
+                cuts.push((p, edge));
+            } else if held[panels.body[p] as usize] < count {
+                cuts.push((p, split::longest(&panels.triangles[p])));
+            }
+        }
+        cuts.truncate(most.map_or(usize::MAX, |most| most.saturating_sub(panels.len())));
+        if cuts.is_empty() {
+            break;
+        }
+        panels = split::bisect(&panels, &cuts);
+    }
+    panels
+}
+
+/// Mean height of the surface over the panel before it was moved there [m].
+fn lift(panels: &Panels, p: usize) -> f64 {
+    let tri = &panels.triangles[p];
+    let n = tri.normal();
+    let corner = |k: usize| [0, 1, 2].map(|c| if c == k { 1.0 } else { 0.0 });
+    let heights = [0, 1, 2].map(|k| (panels.spot(p, corner(k)).point - tri.corners[k]).dot(&n).abs());
+    heights.into_iter().fold(0.0, f64::max)
+}
+
+/// Largest angle between the normals of the surface at the corners of panel `p` [rad].
+fn turn(panels: &Panels, p: usize) -> f64 {
+    let corner = |k: usize| [0, 1, 2].map(|c| if c == k { 1.0 } else { 0.0 });
+    let n = [0, 1, 2].map(|k| panels.spot(p, corner(k)).normal);
+    let between = |a: usize, b: usize| n[a].cross(&n[b]).norm().atan2(n[a].dot(&n[b]));
+    between(0, 1).max(between(1, 2)).max(between(2, 0))
+}
