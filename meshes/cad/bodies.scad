@@ -2,7 +2,7 @@
 // One part a run: openscad -D 'part="torus"' -D turn=36 -D step=15 ...
 //
 // `turn` is the number of facets around the axis, `step` the largest angle between neighbours on an arc of the meridian.
-// Every corner lies on the true body.  A meridian is a list of [r, z], from axis to axis or closed.
+// Every corner lies on the true body, within the grid of 1e-5 mm that OpenSCAD rounds polygons to.  A meridian is a list of [r, z], from axis to axis or closed.
 
 part = "torus";
 turn = 36;
@@ -23,7 +23,10 @@ module turned(points) { rotate_extrude($fn = turn) polygon(snapped(points)); }
 
 // Round disc of radius `r` from height `low` to `high`, rims rounded by `f`.
 function plate(r, low, high, f) = concat(
-    [[0, low]], arc([r - f, low + f], f, -90, 0), 2 * f < high - low ? arc([r - f, high - f], f, 0, 90) : onward([r - f, high - f], f, 0, 90), [[0, high]]);
+    [[0, low]],
+    arc([r - f, low + f], f, -90, 0),
+    2 * f < high - low ? arc([r - f, high - f], f, 0, 90) : onward([r - f, high - f], f, 0, 90),
+    [[0, high]]);
 
 // Bowl: a spherical shell between the radii 26 and 30 below z = 0; its rim is rolled outwards to a bead of radius 4
 // about (30, 0), which goes on from the inner sphere without a kink and meets the outer one in a hollow fillet of radius 2.

@@ -4,12 +4,12 @@
     target/venv/bin/python meshes/cad/occ_bodies.py [FOLDER]     FOLDER: where to; beside this file when left out
 
 Lengths are millimetres, the axis of revolution is z.  The kernel keeps planes, cylinders, spheres and tori as such;
-the spheroid is an ellipse turned about its axis, the dented ball a B-spline through 400 points of its meridian.  The
+the spheroid is an ellipse turned about its axis, the dented ball a B-spline through 800 points of its whole meridian.  The
 mesher puts every corner on the body; the chord height [mm] and the angle [rad] given to it stand beside each body.
 """
 
 import sys
-from math import atan2, cos, exp, hypot, pi, sin, sqrt
+from math import atan2, cos, exp, pi, sin, sqrt
 from pathlib import Path
 
 from OCP.BRepAdaptor import BRepAdaptor_Curve
@@ -21,7 +21,7 @@ from OCP.GC import GC_MakeArcOfCircle
 from OCP.Geom import Geom_Ellipse
 from OCP.GeomAPI import GeomAPI_Interpolate
 from OCP.collections import HArray1_gp_Pnt
-from OCP.gp import gp_Ax1, gp_Ax2, gp_Dir, gp_Pnt, gp_Vec
+from OCP.gp import gp_Ax1, gp_Ax2, gp_Dir, gp_Pnt
 from OCP.StlAPI import StlAPI_Writer
 from OCP.TopAbs import TopAbs_EDGE
 from OCP.TopExp import TopExp_Explorer
@@ -60,6 +60,11 @@ def plate(r, low, high, f):
     return turned(edges)
 
 
+def capsule():
+    side = line((10, -10), (10, 10))
+    return turned([arc((0, -10), 10, -pi / 2, 0), side, arc((0, 10), 10, 0, pi / 2), line((0, 20), (0, -20))])
+
+
 def bowl():
     cx = (32**2 + 30**2 - 6**2) / (2 * 30)
     cz = -sqrt(32**2 - cx**2)
@@ -83,28 +88,32 @@ def dimpled():
     ])
 
 
+def right_half(curve, low, high):
+    """Solid of the half with r > 0 of a closed meridian that crosses the axis at `low` and `high`."""
+    ends = point(0, low), point(0, high)
+    for a, b in (ends, ends[::-1]):
+        edge = BRepBuilderAPI_MakeEdge(curve, a, b).Edge()
+        along = BRepAdaptor_Curve(edge)
+        if along.Value((along.FirstParameter() + along.LastParameter()) / 2).X() > 0:
+            return turned([edge, line((0, low), (0, high))])
+
+
 def dented():
-    n = 400
-    points = HArray1_gp_Pnt(1, n + 1)
-    for i in range(n + 1):
-        t = pi * (1 - i / n)
+    """Both halves of the meridian are interpolated, so that nothing has to be said about its slope at the axis."""
+    n = 800
+    points = HArray1_gp_Pnt(1, n)
+    for i in range(n):
+        t = 2 * pi * (i - n // 2) / n
         radius = 20 - 7 * exp(-((t / 0.5) ** 2))
-        points.SetValue(i + 1, point(radius * sin(t) if 0 < i < n else 0.0, radius * cos(t)))
-    curve = GeomAPI_Interpolate(points, False, 1e-9)
-    curve.Load(gp_Vec(1, 0, 0), gp_Vec(-1, 0, 0))
+        points.SetValue(i + 1, point(radius * sin(t), radius * cos(t)))
+    curve = GeomAPI_Interpolate(points, True, 1e-9)
     curve.Perform()
-    return turned([BRepBuilderAPI_MakeEdge(curve.Curve()).Edge(), line((0, 13), (0, -20))])
+    return right_half(curve.Curve(), -20, 13)
 
 
 def spheroid():
     ellipse = Geom_Ellipse(gp_Ax2(gp_Pnt(0, 0, 0), gp_Dir(0, -1, 0), gp_Dir(0, 0, 1)), 30, 10)
-    half = BRepBuilderAPI_MakeEdge(ellipse, point(0, 30), point(0, -30)).Edge()
-    other = BRepBuilderAPI_MakeEdge(ellipse, point(0, -30), point(0, 30)).Edge()
-    def mid(e):
-        c = BRepAdaptor_Curve(e)
-        return c.Value((c.FirstParameter() + c.LastParameter()) / 2).X()
-
-    return turned([half if mid(half) > 0 else other, line((0, -30), (0, 30))])
+    return right_half(ellipse, -30, 30)
 
 
 def block(x, y, z, f):
@@ -118,10 +127,10 @@ def block(x, y, z, f):
     return fillet.Shape()
 
 
-# name, body, then per file: suffix, chord height [mm], angle [rad].
+# Name, body, then for each file: suffix, chord height [mm], angle [rad].
 BODIES = [
     ("torus", lambda: turned([arc((30, 0), 10, 0, pi), arc((30, 0), 10, pi, 2 * pi)]), [("coarse", 1, 0.45), ("fine", 1, 0.22)]),
-    ("capsule", lambda: turned([arc((0, -10), 10, -pi / 2, 0), line((10, -10), (10, 10)), arc((0, 10), 10, 0, pi / 2), line((0, 20), (0, -20))]), [("coarse", 1, 0.4), ("fine", 1, 0.2)]),
+    ("capsule", capsule, [("coarse", 1, 0.4), ("fine", 1, 0.2)]),
     ("cylinder", lambda: plate(10, -10, 10, 2), [("coarse", 1, 0.4), ("fine", 1, 0.2)]),
     ("plate_low", lambda: plate(30, -10, -4, 3), [("coarse", 1, 0.4), ("fine", 1, 0.2)]),
     ("plate_high", lambda: plate(20, 4, 10, 2), [("coarse", 1, 0.4), ("fine", 1, 0.2)]),
