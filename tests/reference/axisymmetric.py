@@ -3,7 +3,7 @@ and mutual capacitance of sheets with a narrow gap (sheets.py), computed apart f
 
 Run by hand from the root of the project; nothing runs it in the tests:
 
-    python3 -m venv target/venv && target/venv/bin/pip install numpy scipy
+    python3 -m venv target/venv && target/venv/bin/pip install numpy scipy mpmath
     target/venv/bin/python tests/reference/axisymmetric.py --check     # closed forms only
     target/venv/bin/python tests/reference/axisymmetric.py
 
@@ -34,6 +34,8 @@ from numpy.polynomial import legendre
 from scipy.optimize import minimize_scalar
 from scipy.special import ellipkm1
 
+import sheets
+
 HERE = Path(__file__).parent
 EPS0 = 8.8541878188e-12  # F/m, CODATA 2022
 GRADE = 0.25  # ratio of neighbouring panels towards a joint
@@ -51,7 +53,8 @@ class Curve:
 
 def line(a, b):
     a, b = np.array(a, float), np.array(b, float)
-    return Curve(lambda t: a[:, None] + (b - a)[:, None] * t, lambda t: (b - a)[:, None] + 0 * t, (a[0] == 0, b[0] == 0))
+    at = lambda t: a[:, None] + (b - a)[:, None] * t
+    return Curve(at, lambda t: (b - a)[:, None] + 0 * t, (a[0] == 0, b[0] == 0))
 
 
 def arc(c, radius, start, end, smooth=(False, False)):
@@ -173,7 +176,7 @@ class Solved:
     def capacitance(self):
         """Maxwell matrix over ε₀, in the length of the input."""
         flux = 2 * pi * self.x[0] * self.w
-        return np.array([[flux[self.of == i] @ self.field[self.of == i, j] for j in range(self.n_bodies)] for i in range(self.n_bodies)])
+        return np.array([flux[self.of == i] @ self.field[self.of == i] for i in range(self.n_bodies)])
 
     def on_panel(self, j, volts, t):
         n = len(self.panels[j].t)
@@ -189,16 +192,18 @@ class Solved:
                 if e.max() > best[0]:
                     best = (e.max(), (j, t[max(e.argmax() - 1, 0)], t[min(e.argmax() + 1, 64)]))
         j, lo, hi = best[1]
-        found = minimize_scalar(lambda t: -abs(self.on_panel(j, volts, t)[0]), bounds=(lo, hi), method="bounded", options={"xatol": 1e-12})
-        t = max((found.x, lo, hi), key=lambda t: abs(self.on_panel(j, volts, t)[0]))
-        return abs(self.on_panel(j, volts, t)[0]), *self.panels[j].curve.at(np.array([t]))[:, 0]
+        size = lambda t: abs(self.on_panel(j, volts, t)[0])
+        found = minimize_scalar(lambda t: -size(t), bounds=(lo, hi), method="bounded", options={"xatol": 1e-12})
+        t = max((found.x, lo, hi), key=size)
+        return size(t), *self.panels[j].curve.at(np.array([t]))[:, 0]
 
     def field_at(self, volts, r, z):
         """E at the point of a surface nearest to (r, z)."""
         def apart(t, p):
             return np.hypot(*(p.curve.at(np.array([t]))[:, 0] - (r, z)))
 
-        j = min(range(len(self.panels)), key=lambda j: min(apart(t, self.panels[j]) for t in np.linspace(self.panels[j].lo, self.panels[j].hi, 9)))
+        nearest = lambda p: min(apart(t, p) for t in np.linspace(p.lo, p.hi, 9))
+        j = min(range(len(self.panels)), key=lambda j: nearest(self.panels[j]))
         p = self.panels[j]
         t = minimize_scalar(apart, args=(p,), bounds=(p.lo, p.hi), method="bounded", options={"xatol": 1e-13}).x
         t = min((t, p.lo, p.hi), key=lambda t: apart(t, p))
@@ -215,7 +220,8 @@ def torus(major, minor):
 
 def capsule(radius, straight):
     h = straight / 2
-    return [arc((0, -h), radius, -pi / 2, 0), line((radius, -h), (radius, h)), arc((0, h), radius, 0, pi / 2)]
+    side = line((radius, -h), (radius, h))
+    return [arc((0, -h), radius, -pi / 2, 0), side, arc((0, h), radius, 0, pi / 2)]
 
 
 def plate(radius, low, high, f):
@@ -283,6 +289,8 @@ def dented():
 
 COARSE, FINE = (12, 4, 1e-3), (16, 6, 1e-4)  # order, pieces of a curve, finest panel in curves
 
+GAPS = (0.01, 0.001)  # of the sheets, in radii or sides
+
 # id, STL files without their suffix `_coarse`, `_fine`, ...; meridians [mm]; times as many pieces; symmetric about z = 0;
 # further places (r, z) [mm].
 BODIES = [
@@ -317,21 +325,69 @@ def quantities(bodies, pieces, symmetric, places, resolution):
     return out
 
 
+def row(name, files, quantity, unit, coarse, fine, source):
+    """One row of cad.csv: `fine`, its change from `coarse`, and never less than FLOOR."""
+    # A place is where a slope vanishes: known to the root of the rounding only.
+    least = 1e-9 if unit == "m" else FLOOR * abs(fine)
+    return [name, files, quantity, unit, repr(float(fine)), f"{max(abs(fine - coarse), least):.1e}", source]
+
+
 def body_rows():
+    source = "axisymmetric integral equation (axisymmetric.py), two resolutions"
     for name, stems, bodies, pieces, symmetric, places in BODIES:
         coarse = quantities(bodies, pieces, symmetric, places, COARSE)
         fine = quantities(bodies, pieces, symmetric, places, FINE)
         files = ";".join(f"{kernel}_{stem}_*.stl" for kernel in ("scad", "occ") for stem in stems)
         for quantity, (unit, value) in fine.items():
-            change = abs(value - coarse[quantity][1])
-            least = 1e-9 if unit == "m" else FLOOR * abs(value)  # A place is where the slope vanishes: root of rounding.
-            source = "axisymmetric integral equation (axisymmetric.py), two resolutions"
-            yield [f"cad.{name}", files, quantity, unit, repr(float(value)), f"{max(change, least):.1e}", source]
-        print(name, {q: v for q, (_, v) in fine.items()}, flush=True)
+            yield row(f"cad.{name}", files, quantity, unit, coarse[quantity][1], value, source)
+        print(name, flush=True)
+
+
+def size_rows():
+    """Area and volume of the true bodies: Pappus for those of revolution, Steiner's formula for rounded blocks."""
+    for _, stems, bodies, pieces, *_ in BODIES:
+        for stem, curves in zip(stems, bodies):
+            area, volume = np.zeros(2), np.zeros(2)
+            for k, (order, per_curve, finest) in enumerate((COARSE, FINE)):
+                for p in panels_of(curves, order, per_curve * pieces, finest):
+                    slope = p.curve.along(p.t)
+                    area[k] += 2e-6 * pi * p.x[0] @ p.w
+                    volume[k] += 1e-9 * pi * p.x[0] ** 2 @ (p.w * slope[1] / np.hypot(*slope))
+            files = f"scad_{stem}_*.stl;occ_{stem}_*.stl"
+            yield row(f"cad.{stem}", files, "area", "m2", *area, "area of the surface of revolution (axisymmetric.py)")
+            yield row(f"cad.{stem}", files, "volume", "m3", *np.abs(volume), "volume of the body of revolution (axisymmetric.py)")
+    for stem, sides, f in [("block", (40, 30, 20), 3)] + [(f"cube_r{f}", (100, 100, 100), f) for f in (4, 2, 1)]:
+        a, b, c = (side - 2 * f for side in sides)
+        faces = a * b + b * c + c * a
+        area = 1e-6 * (2 * faces + 2 * pi * f * (a + b + c) + 4 * pi * f**2)
+        volume = 1e-9 * (a * b * c + 2 * f * faces + pi * f**2 * (a + b + c) + 4 / 3 * pi * f**3)
+        files = "scad_block_*.stl;occ_block_*.stl" if stem == "block" else f"occ_{stem}_drawn.stl"
+        yield row(f"cad.{stem}", files, "area", "m2", area, area, "Steiner's formula")
+        yield row(f"cad.{stem}", files, "volume", "m3", volume, volume, "Steiner's formula")
+
+
+def sheet_rows():
+    discs = [{gap: sheets.disc_pair(gap, order) for gap in GAPS} for order in (12, 16)]
+    settings = ((0.2, 5, 1e-7, 0.25), (0.15, 6, 1e-8, 0.25))
+    squares = [sheets.square_charges(GAPS, *s) for s in settings]
+    squares = [{gap: ((o + e) / 2, (e - o) / 2) for gap, (o, e) in pair.items()} for pair in squares]
+    for shape, letter, area, pairs, source in [
+        ("discs", "a", pi, discs, "Love's equation (sheets.py), two resolutions"),
+        ("squares", "L", 1, squares, "Galerkin's method with a sum of Gaussians (sheets.py), two resolutions"),
+    ]:
+        for gap in GAPS:
+            (c11, c12), (fine11, fine12) = (pair[gap] for pair in pairs)
+            name, per = f"sheets.{shape}.{gap}", f"/(4*pi*eps0*{letter})"
+            yield row(name, "", "C11" + per, "1", c11, fine11, source)
+            yield row(name, "", "C12" + per, "1", c12, fine12, source)
+            yield row(name, "", "C_mutual" + per, "1", (c11 - c12) / 2, (fine11 - fine12) / 2, source)
+            over = 4 * pi * gap / area
+            flat = "C_mutual*gap/(eps0*" + ("pi*a^2)" if shape == "discs" else "L^2)")
+            yield row(name, "", flat, "1", over * (c11 - c12) / 2, over * (fine11 - fine12) / 2, source)
 
 
 def two_spheres(gap):
-    """C11, C12 over 4πε₀a of two equal spheres: image series (Maxwell, Treatise, 1891, art. 173; Smythe, 3rd ed. 1968, sec. 5.08)."""
+    """C11 and C12 over 4πε₀a of two equal spheres by images (Smythe, Static and Dynamic Electricity, 3rd ed., sec. 5.08)."""
     u = acosh(1 + gap / 2)
     n = np.arange(1, 4000)
     with np.errstate(over="ignore"):
@@ -339,12 +395,13 @@ def two_spheres(gap):
 
 
 def torus_series(ratio):
-    """C over 4πε₀R of the ring with R/r = ratio: (2/π) sqrt(1 − 1/ratio²) Σ' Q/P of order n − 1/2 at `ratio` (Hicks 1881)."""
-    import mpmath
+    """C over 4πε₀R of a ring, R/r = ratio: (2/π) sqrt(1 − 1/ratio²) Σ' Q/P of degree n − 1/2 at `ratio` (Hicks 1881)."""
+    import mpmath as mp
 
-    q = lambda n: mpmath.re(mpmath.legenq(n - mpmath.mpf(1) / 2, 0, ratio, type=3))
-    p = lambda n: mpmath.re(mpmath.legenp(n - mpmath.mpf(1) / 2, 0, ratio, type=3))
-    return float(2 / mpmath.pi * mpmath.sqrt(1 - mpmath.mpf(1) / ratio**2) * (q(0) / p(0) + 2 * sum(q(n) / p(n) for n in range(1, 20))))
+    q = lambda n: mp.re(mp.legenq(n - mp.mpf(1) / 2, 0, ratio, type=3))
+    p = lambda n: mp.re(mp.legenp(n - mp.mpf(1) / 2, 0, ratio, type=3))
+    series = q(0) / p(0) + 2 * sum(q(n) / p(n) for n in range(1, 20))
+    return float(2 / mp.pi * mp.sqrt(1 - mp.mpf(1) / ratio**2) * series)
 
 
 # Computed by an axisymmetric integral equation of other make, stated to 1e-11 (C over 4πε₀a) and 1e-8 (E a/V) or better.
@@ -392,7 +449,7 @@ def check():
 def main():
     if "--check" in sys.argv:
         return check()
-    rows = list(body_rows())
+    rows = [*body_rows(), *size_rows(), *sheet_rows()]
     with open(HERE / "cad.csv", "w", newline="") as f:
         out = csv.writer(f, lineterminator="\n")
         out.writerow(["id", "files", "quantity", "unit", "value", "uncertainty", "source"])
