@@ -1,5 +1,6 @@
 """Writes cad.csv beside this file: capacitance and surface field of the true bodies of revolution in meshes/cad,
-and mutual capacitance of sheets with a narrow gap (sheets.py), computed apart from the program.
+and of the rounded blocks there (blocks.py), and mutual capacitance of sheets with a narrow gap (sheets.py), computed
+apart from the program.
 
 Run by hand from the root of the project; nothing runs it in the tests:
 
@@ -34,6 +35,7 @@ from numpy.polynomial import legendre
 from scipy.optimize import minimize_scalar
 from scipy.special import ellipkm1
 
+import blocks
 import sheets
 
 HERE = Path(__file__).parent
@@ -289,6 +291,9 @@ def dented():
 
 COARSE, FINE = (12, 4, 1e-3), (16, 6, 1e-4)  # order, pieces of a curve, finest panel in curves
 
+# Name, sides and radius [mm] of the blocks.
+ROUNDED = [("block", (40, 30, 20), 3), *((f"cube_r{f}", (100, 100, 100), f) for f in (4, 2, 1))]
+
 GAPS = (0.01, 0.001)  # of the sheets, in radii or sides
 
 # id, STL files without their suffix `_coarse`, `_fine`, ...; meridians [mm]; times as many pieces; symmetric about z = 0;
@@ -325,10 +330,10 @@ def quantities(bodies, pieces, symmetric, places, resolution):
     return out
 
 
-def row(name, files, quantity, unit, coarse, fine, source):
-    """One row of cad.csv: `fine`, its change from `coarse`, and never less than FLOOR."""
+def row(name, files, quantity, unit, coarse, fine, source, floor=FLOOR):
+    """One row of cad.csv: `fine`, its change from `coarse`, and never less than `floor` of it."""
     # A place is where a slope vanishes: known to the root of the rounding only.
-    least = 1e-9 if unit == "m" else FLOOR * abs(fine)
+    least = 1e-9 if unit == "m" else floor * abs(fine)
     return [name, files, quantity, unit, repr(float(fine)), f"{max(abs(fine - coarse), least):.1e}", source]
 
 
@@ -356,7 +361,7 @@ def size_rows():
             files = f"scad_{stem}_*.stl;occ_{stem}_*.stl"
             yield row(f"cad.{stem}", files, "area", "m2", *area, "area of the surface of revolution (axisymmetric.py)")
             yield row(f"cad.{stem}", files, "volume", "m3", *np.abs(volume), "volume of the body of revolution (axisymmetric.py)")
-    for stem, sides, f in [("block", (40, 30, 20), 3)] + [(f"cube_r{f}", (100, 100, 100), f) for f in (4, 2, 1)]:
+    for stem, sides, f in ROUNDED:
         a, b, c = (side - 2 * f for side in sides)
         faces = a * b + b * c + c * a
         area = 1e-6 * (2 * faces + 2 * pi * f * (a + b + c) + 4 * pi * f**2)
@@ -366,24 +371,38 @@ def size_rows():
         yield row(f"cad.{stem}", files, "volume", "m3", volume, volume, "Steiner's formula")
 
 
+def block_rows():
+    """Twice the change is claimed: fields in the middle of long quadrilaterals settle unevenly."""
+    source = "integral equation on curved quadrilaterals (blocks.py), two resolutions"
+    si = {"F": EPS0 * 1e-3, "V/m per V": 1e3, "m": 1e-3}
+    for stem, sides, f in ROUNDED:
+        coarse = blocks.quantities(sides, f, blocks.COARSE)
+        files = "scad_block_*.stl;occ_block_*.stl" if stem == "block" else f"occ_{stem}_drawn.stl"
+        for quantity, (unit, value) in blocks.quantities(sides, f, blocks.FINE).items():
+            doubled = value + 2 * (coarse[quantity][1] - value)
+            yield row(f"cad.{stem}", files, quantity, unit, doubled * si[unit], value * si[unit], source)
+        print(stem, flush=True)
+
+
 def sheet_rows():
     discs = [{gap: sheets.disc_pair(gap, order) for gap in GAPS} for order in (12, 16)]
     settings = ((0.2, 5, 1e-7, 0.25), (0.15, 6, 1e-8, 0.25))
     squares = [sheets.square_charges(GAPS, *s) for s in settings]
     squares = [{gap: ((o + e) / 2, (e - o) / 2) for gap, (o, e) in pair.items()} for pair in squares]
-    for shape, letter, area, pairs, source in [
-        ("discs", "a", pi, discs, "Love's equation (sheets.py), two resolutions"),
-        ("squares", "L", 1, squares, "Galerkin's method with a sum of Gaussians (sheets.py), two resolutions"),
+    for shape, letter, area, pairs, floor, source in [
+        ("discs", "a", pi, discs, FLOOR, "Love's equation (sheets.py), two resolutions"),
+        # One square alone comes out 1.2e-8 low, six times the change between the two resolutions.
+        ("squares", "L", 1, squares, 1e-7, "Galerkin's method with a sum of Gaussians (sheets.py), two resolutions"),
     ]:
         for gap in GAPS:
             (c11, c12), (fine11, fine12) = (pair[gap] for pair in pairs)
             name, per = f"sheets.{shape}.{gap}", f"/(4*pi*eps0*{letter})"
-            yield row(name, "", "C11" + per, "1", c11, fine11, source)
-            yield row(name, "", "C12" + per, "1", c12, fine12, source)
-            yield row(name, "", "C_mutual" + per, "1", (c11 - c12) / 2, (fine11 - fine12) / 2, source)
+            yield row(name, "", "C11" + per, "1", c11, fine11, source, floor)
+            yield row(name, "", "C12" + per, "1", c12, fine12, source, floor)
+            yield row(name, "", "C_mutual" + per, "1", (c11 - c12) / 2, (fine11 - fine12) / 2, source, floor)
             over = 4 * pi * gap / area
             flat = "C_mutual*gap/(eps0*" + ("pi*a^2)" if shape == "discs" else "L^2)")
-            yield row(name, "", flat, "1", over * (c11 - c12) / 2, over * (fine11 - fine12) / 2, source)
+            yield row(name, "", flat, "1", over * (c11 - c12) / 2, over * (fine11 - fine12) / 2, source, floor)
 
 
 def two_spheres(gap):
@@ -440,6 +459,10 @@ def check():
     compare("torus 3, C", s.capacitance()[0, 0] / (12 * pi), torus_series(3))
     compare("torus 3, outer equator", s.highest(one, 0)[0], 0.4560452184918312)
     compare("torus 3, inner equator", s.field_at(one, 2, 0), 0.09665198896752947)
+    (alone, _) = sheets.square_charges([None], 0.15, 6, 1e-8, 0.25)[None] * 2
+    compare("square sheet, C", alone, 0.3667880040414091, 5e-8)  # Stated to 8e-11, by another program.
+    ball = blocks.Block((2.0, 2.0, 2.0), 1 - 1e-9, 6, 0, 1)
+    compare("ball as a rounded cube, C", ball.capacitance / (4 * pi), 1)
     for what, body, c_ratio, e in OTHERS:
         s = solved([body])
         compare(f"{what}, C", s.capacitance()[0, 0] / (4 * pi), c_ratio)
@@ -449,7 +472,7 @@ def check():
 def main():
     if "--check" in sys.argv:
         return check()
-    rows = [*body_rows(), *size_rows(), *sheet_rows()]
+    rows = [*body_rows(), *block_rows(), *size_rows(), *sheet_rows()]
     with open(HERE / "cad.csv", "w", newline="") as f:
         out = csv.writer(f, lineterminator="\n")
         out.writerow(["id", "files", "quantity", "unit", "value", "uncertainty", "source"])
