@@ -461,8 +461,13 @@ def check():
     compare("torus 3, inner equator", s.field_at(one, 2, 0), 0.09665198896752947)
     (alone, _) = sheets.square_charges([None], 0.15, 6, 1e-8, 0.25)[None] * 2
     compare("square sheet, C", alone, 0.3667880040414091, 5e-8)  # Stated to 8e-11, by another program.
-    ball = blocks.Block((2.0, 2.0, 2.0), 1 - 1e-9, 6, 0, 1)
-    compare("ball as a rounded cube, C", ball.capacitance / (4 * pi), 1)
+    # A ball of radius 1 - d whose octants are moved out by d along each axis: C gains the mean move, 3 d / 2.
+    ball = blocks.Block((2.0, 2.0, 2.0), 1 - 1e-4, 6, 0, 1)
+    compare("ball drawn apart, C", ball.capacitance / (4 * pi), 1 - 1e-4 + 1.5e-4, 1e-7)
+    cube = blocks.Block((1.0, 1.0, 1.0), 0.04, *blocks.COARSE)
+    copies = np.repeat([len(p.group) for p in cube.patches], cube.order**2)
+    inside = (cube.field * cube.w * copies / np.linalg.norm(cube.x, axis=1)).sum() / (4 * pi)
+    compare("rounded cube, potential in the middle", inside, 1, 1e-6)
     for what, body, c_ratio, e in OTHERS:
         s = solved([body])
         compare(f"{what}, C", s.capacitance()[0, 0] / (4 * pi), c_ratio)
