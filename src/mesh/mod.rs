@@ -6,12 +6,16 @@
 
 pub mod accept;
 pub mod assembly;
+pub mod borders;
 mod chart;
 mod contact;
 pub mod edges;
 mod expose;
 mod expose_split;
+mod faces;
 mod flat;
+pub mod form;
+mod form_fit;
 pub mod holes;
 mod joints;
 mod listing;
@@ -20,6 +24,8 @@ mod orient;
 mod parts;
 pub mod place;
 mod plane_cut;
+pub mod recognise;
+mod region;
 pub mod repair;
 pub mod selfcross;
 pub mod shells;
