@@ -201,7 +201,10 @@ fn windows(search: &Search<'_>, seed: u32) -> Vec<Vec<u32>> {
             windows.push(window);
         }
     };
-    let beside: Vec<u32> = face.beside.iter().map(|(g, _)| *g).filter(free).take(4).collect();
+    // Where much was tried for nothing, a third of the windows must do.
+    let thorough = search.n_failed <= PATIENCE;
+    let (n_beside, n_wide) = if thorough { (4, 3) } else { (2, 1) };
+    let beside: Vec<u32> = face.beside.iter().map(|(g, _)| *g).filter(free).take(n_beside).collect();
     for (k, g) in beside.iter().enumerate() {
         for h in &beside[k + 1..] {
             add(vec![seed, *g, *h]);
@@ -209,11 +212,11 @@ fn windows(search: &Search<'_>, seed: u32) -> Vec<Vec<u32>> {
     }
     let step = face.corners.len().div_ceil(CORNERS).max(1);
     let stars: Vec<Vec<u32>> = face.corners.iter().step_by(step).map(|k| faces.star(seed, *k)).collect();
-    for star in &stars {
+    for star in stars.iter().take(if thorough { CORNERS + 1 } else { n_wide }) {
         add(star.clone());
     }
     add(stars.concat());
-    for star in stars.iter().take(3) {
+    for star in stars.iter().take(n_wide) {
         let mut wide = star.clone();
         for f in star.iter().filter(|f| faces.faces[**f as usize].corners.len() <= 8) {
             for k in &faces.faces[*f as usize].corners {
@@ -222,8 +225,8 @@ fn windows(search: &Search<'_>, seed: u32) -> Vec<Vec<u32>> {
         }
         add(wide);
     }
-    for g in &beside {
-        add(vec![seed, *g]);
+    if thorough {
+        beside.iter().for_each(|g| add(vec![seed, *g]));
     }
     windows
 }
