@@ -10,6 +10,7 @@ use nalgebra::SMatrix;
 use nalgebra::SVector;
 use nalgebra::SymmetricEigen;
 use nalgebra::Vector4;
+use std::f64::consts::FRAC_PI_2;
 
 /// Most numbers that fix a form: those of a torus.
 const MOST: usize = 7;
@@ -24,10 +25,17 @@ const PATIENT: usize = 4;
 /// Sum of squares over that of the distances allowed above which a fit is far off [1].
 const HOPELESS: f64 = 1e4;
 
+/// Distance from the apex, in extents of the points, within which a corner is meant to be the apex [1].
+const TIP: f64 = 1e-2;
+
 /// Smallest over largest eigenvalue of the scaled normal equations under which the points do not fix the
 /// form: two circles leave a family of tori, whose smallest eigenvalue is rounding (below 1e-13); the
 /// thinnest real patch of the tests has 1e-7.
 const FIXED: f64 = 1e-11;
+
+/// Half angle of a cone, and what it lacks of a right angle, at least [rad]: beyond it is a cylinder or a
+/// plane.
+const LEAST_ANGLE: f64 = 1e-4;
 
 type Square = SMatrix<f64, MOST, MOST>;
 type Column = SVector<f64, MOST>;
@@ -102,7 +110,7 @@ pub(super) fn refine(start: Form, points: &[Vec3], near: f64) -> Option<Fit> {
     let scale = extent(points);
     let mut form = start;
     let mut damping = 1e-6;
-    let mut sum = square_sum(&form, points);
+    let mut sum = square_sum(&form, points, scale);
     let mut last = None;
     for n in 0..STEPS {
         let frame = frame(&form);
@@ -115,7 +123,7 @@ pub(super) fn refine(start: Form, points: &[Vec3], near: f64) -> Option<Fit> {
             damping = (damping * 10.0_f64).max(1e-4);
             continue;
         };
-        let next_sum = square_sum(&next, points);
+        let next_sum = square_sum(&next, points, scale);
         let size = step.amax();
         if next_sum <= sum {
             let gain = sum - next_sum;
@@ -163,7 +171,7 @@ fn inverse(form: &Form, normal: &Square) -> Option<Square> {
     }
     let eigen = SymmetricEigen::new(scaled);
     let (lo, hi) = (eigen.eigenvalues.min(), eigen.eigenvalues.max());
-    if lo.is_nan() || lo <= FIXED * hi {
+    if lo <= FIXED * hi {
         return None;
     }
     let mut inverse = scaled.try_inverse()?;
@@ -185,8 +193,19 @@ fn mean(points: &[Vec3]) -> Vec3 {
     points.iter().sum::<Vec3>() / points.len().max(1) as f64
 }
 
-fn square_sum(form: &Form, points: &[Vec3]) -> f64 {
-    points.iter().map(|p| form.distance(p).powi(2)).sum()
+fn square_sum(form: &Form, points: &[Vec3], scale: f64) -> f64 {
+    let square = |p: &Vec3| match tip(form, p, scale) {
+        Some(off) => off.norm_squared(),
+        None => form.distance(p).powi(2),
+    };
+    points.iter().map(square).sum()
+}
+
+/// From the apex to a corner that is meant to be it [m]: there the distance from the cone has no
+/// derivative, and a cone through a circle could turn about the corner.
+fn tip(form: &Form, x: &Vec3, scale: f64) -> Option<Vec3> {
+    let Form::Cone { apex, .. } = form else { return None };
+    Some(x - apex).filter(|off| off.norm() <= TIP * scale)
 }
 
 fn frame(form: &Form) -> [Vec3; 2] {
@@ -248,6 +267,13 @@ fn row(form: &Form, frame: &[Vec3; 2], scale: f64, x: &Vec3) -> (f64, Column) {
 fn equations(form: &Form, frame: &[Vec3; 2], scale: f64, points: &[Vec3]) -> (Square, Column) {
     let (mut normal, mut right) = (Square::zeros(), Column::zeros());
     for p in points {
+        if let Some(off) = tip(form, p, scale) {
+            for k in 0..3 {
+                normal[(k + 2, k + 2)] += 1.0;
+                right[k + 2] += off[k];
+            }
+            continue;
+        }
         let (distance, row) = row(form, frame, scale, p);
         normal.ger(1.0, &row, &row, 1.0);
         right.axpy(-distance, &row, 1.0);
@@ -295,7 +321,7 @@ fn stepped(form: &Form, [u, v]: &[Vec3; 2], scale: f64, step: &Column) -> Option
 fn is_sound(form: &Form) -> bool {
     match *form {
         Form::Sphere { radius, .. } | Form::Cylinder { radius, .. } => 0.0 < radius && radius.is_finite(),
-        Form::Cone { half_angle, .. } => 1e-4 < half_angle && half_angle < 0.99 * std::f64::consts::FRAC_PI_2,
+        Form::Cone { half_angle, .. } => LEAST_ANGLE < half_angle && half_angle < FRAC_PI_2 - LEAST_ANGLE,
         Form::Torus { major, minor, .. } => 0.0 < minor && 0.0 < major && (major + minor).is_finite(),
         Form::Plane { .. } | Form::Free => true,
     }

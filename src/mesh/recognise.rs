@@ -11,6 +11,7 @@ use super::faces::faces;
 use super::form::Form;
 use super::region::Region;
 use super::region::Search;
+use super::region::is_left_out;
 use super::region::seek;
 use super::region::still_free;
 use crate::base::Vec3;
@@ -22,6 +23,9 @@ use std::collections::BTreeMap;
 /// of a spheroid of ratio 2, drawn with 16 to 64 rings, differ by 0.05 to 0.2 of the turn, cones through
 /// two by all of it.
 const TANGENT: f64 = 0.03;
+
+/// Error of a normal from rounding, in turns over the border, above which an agreement means nothing [1].
+const BLURRED: f64 = 0.3;
 
 /// Widths of a neighbour from which a face beside it counts as a flat, or a strip as a straight one [1].
 const WIDER: f64 = 3.0;
@@ -49,12 +53,7 @@ pub struct Patches {
 impl Patches {
     /// One patch of no known form.
     pub fn none(n_facets: usize) -> Self {
-        Patches {
-            of_facet: vec![0; n_facets],
-            forms: vec![Form::Free],
-            borders: Vec::new(),
-            curves: Vec::new(),
-        }
+        Patches { of_facet: vec![0; n_facets], forms: vec![Form::Free], borders: Vec::new(), curves: Vec::new() }
     }
 }
 
@@ -105,6 +104,7 @@ fn seek_all(faces: &Faces<'_>) -> (Vec<Region>, Vec<u32>) {
     }
     settle(&mut search, &regions, settled);
     agreeing(&mut search, &mut regions, &pool);
+    adopt(&mut search, &regions);
     (regions, search.owner)
 }
 
@@ -129,6 +129,22 @@ fn agreeing(search: &mut Search<'_>, regions: &mut Vec<Region>, pool: &[Region])
         }
         if regions.len() == before {
             return;
+        }
+    }
+}
+
+/// Gives small faces that no region took to the one beside which they lie with most of their edges.
+fn adopt(search: &mut Search<'_>, regions: &[Region]) {
+    for face in 0..search.owner.len() {
+        let this = &search.faces.faces[face];
+        if search.owner[face] != NONE {
+            continue;
+        }
+        let owners = this.beside.iter().map(|(g, _)| search.owner[*g as usize]).filter(|k| *k != NONE);
+        if let Some(k) =
+            owners.into_iter().find(|k| is_left_out(search.faces, &regions[*k as usize], face as u32))
+        {
+            search.owner[face] = k;
         }
     }
 }
@@ -158,7 +174,8 @@ fn is_flat(faces: &Faces<'_>, face: usize, owner: &[u32]) -> bool {
     let rivals = this.beside.iter().filter(|(g, _)| owner[*g as usize] == NONE);
     let widest = rivals.map(|(g, _)| faces.faces[*g as usize].width).fold(0.0, f64::max);
     if widest <= 0.0 {
-        return true;
+        let beside = this.beside.iter().map(|(g, _)| faces.faces[*g as usize].width).fold(0.0, f64::max);
+        return FLAT_FACETS <= this.facets.len() || beside <= WIDER * this.width;
     }
     let inner = || {
         this.corners.iter().any(|k| faces.around(*k).iter().all(|f| faces.of[*f as usize] as usize == face))
@@ -201,6 +218,7 @@ fn agrees(faces: &Faces<'_>, regions: &[Region], owner: &[u32], k: usize) -> boo
                     })
                 });
                 match fits {
+                    Some(_) if BLURRED * turn < noise => bad += length,
                     Some(true) => good += length,
                     Some(false) => bad += length,
                     None if is_long(faces, *face, other, &ends) => {}

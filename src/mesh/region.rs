@@ -32,7 +32,7 @@ const COARSER: f64 = 2.5;
 const TURNS: f64 = 0.2;
 
 /// Turns over the width of the faces in roundings under which nothing can be told [1].
-const SEEN: f64 = 10.0;
+const SEEN: f64 = 30.0;
 
 /// Corners that a fit is made on at most.
 const SAMPLE: usize = 300;
@@ -43,13 +43,19 @@ const AS_LARGE: f64 = 0.98;
 /// Corners of a seed and of its neighbours that windows are laid around at most.
 const CORNERS: usize = 6;
 
+/// Rounding in the least spread of the corners from which they tell nothing about quadrics [1].
+const MUDDY: f64 = 0.01;
+
 /// Second smallest over rounding of the general quadric through the corners from which it is the only one
 /// [1], and the least it must be.
 const UNIQUE: f64 = 10.0;
 const UNIQUE_LEAST: f64 = 1e-3;
 
-/// Seeds that may find nothing before the neighbours of such seeds are passed over.
-const PATIENCE: usize = 2000;
+/// The same for the smallest, from which there is none [1].
+const NONE_LEAST: f64 = 1e-6;
+
+/// Seeds that may find nothing before the faces around such seeds are passed over.
+const PATIENCE: usize = 1000;
 
 /// A form and the faces that hold to it.
 #[derive(Clone, Debug)]
@@ -72,6 +78,7 @@ pub(super) struct Search<'a> {
     pub(super) pool: Vec<Region>,
     /// Those of the pool that hold on each face.
     pooled: Vec<Vec<u32>>,
+    /// Faces around seeds that found nothing.
     failed: Vec<bool>,
     n_failed: usize,
     stamp: Vec<u32>,
@@ -118,8 +125,7 @@ pub(super) fn seek(search: &mut Search<'_>, seed: u32) -> Option<Region> {
     if face.beside.is_empty() || !face.sure {
         return None;
     }
-    let passed_over = |f: &(u32, f64)| search.failed[f.0 as usize];
-    if PATIENCE < search.n_failed && face.beside.iter().any(passed_over) {
+    if PATIENCE < search.n_failed && search.failed[seed as usize] {
         return None;
     }
     let mut found: Vec<Region> = Vec::new();
@@ -145,8 +151,11 @@ pub(super) fn seek(search: &mut Search<'_>, seed: u32) -> Option<Region> {
         }
     }
     if found.is_empty() {
-        search.failed[seed as usize] = true;
         search.n_failed += 1;
+        if face.facets.len() <= 2 {
+            let around = face.corners.iter().flat_map(|k| faces.star(seed, *k));
+            around.for_each(|f| search.failed[f as usize] = true);
+        }
     }
     let most = found.iter().map(|r| r.area).fold(0.0, f64::max);
     let near = found.into_iter().filter(|r| AS_LARGE * most <= r.area);
@@ -192,7 +201,10 @@ fn windows(search: &Search<'_>, seed: u32) -> Vec<Vec<u32>> {
             windows.push(window);
         }
     };
-    let beside: Vec<u32> = face.beside.iter().map(|(g, _)| *g).filter(free).take(4).collect();
+    // Where much was tried for nothing, a third of the windows must do.
+    let thorough = search.n_failed <= PATIENCE;
+    let (n_beside, n_wide) = if thorough { (4, 3) } else { (2, 1) };
+    let beside: Vec<u32> = face.beside.iter().map(|(g, _)| *g).filter(free).take(n_beside).collect();
     for (k, g) in beside.iter().enumerate() {
         for h in &beside[k + 1..] {
             add(vec![seed, *g, *h]);
@@ -200,11 +212,11 @@ fn windows(search: &Search<'_>, seed: u32) -> Vec<Vec<u32>> {
     }
     let step = face.corners.len().div_ceil(CORNERS).max(1);
     let stars: Vec<Vec<u32>> = face.corners.iter().step_by(step).map(|k| faces.star(seed, *k)).collect();
-    for star in &stars {
+    for star in stars.iter().take(if thorough { CORNERS + 1 } else { n_wide }) {
         add(star.clone());
     }
     add(stars.concat());
-    for star in stars.iter().take(3) {
+    for star in stars.iter().take(n_wide) {
         let mut wide = star.clone();
         for f in star.iter().filter(|f| faces.faces[**f as usize].corners.len() <= 8) {
             for k in &faces.faces[*f as usize].corners {
@@ -213,8 +225,8 @@ fn windows(search: &Search<'_>, seed: u32) -> Vec<Vec<u32>> {
         }
         add(wide);
     }
-    for g in &beside {
-        add(vec![seed, *g]);
+    if thorough {
+        beside.iter().for_each(|g| add(vec![seed, *g]));
     }
     windows
 }
@@ -267,6 +279,25 @@ fn holds(faces: &Faces<'_>, fit: &Fit, face: u32, coarsest: f64) -> Option<f64> 
     }
     let bends = if matches!(fit.form, Form::Cone { .. }) { 0.0 } else { bends };
     (!this.sure || TURNS * bends * this.width <= leans + noise).then_some(leans)
+}
+
+/// Whether a small face between others of a region was left out only for its odd shape.
+pub(super) fn is_left_out(faces: &Faces<'_>, region: &Region, face: u32) -> bool {
+    let this = &faces.faces[face as usize];
+    let noise = 4.0 * faces.rounding / this.width.max(f64::MIN_POSITIVE);
+    let mean = region.area / region.faces.len().max(1) as f64;
+    let leans = |k: &u32| {
+        let x = faces.point(*k);
+        region.form.nearest(&x).map_or(0.0, |(_, n)| angle(&n, &this.normal))
+    };
+    let most = this.corners.iter().map(leans).fold(0.0, f64::max);
+    this.area <= mean && lies_on(faces, &region.form, face) && most <= LEANS * faces.crease_angle + noise
+}
+
+/// Whether all corners of a face are within rounding of a form.
+pub(super) fn lies_on(faces: &Faces<'_>, form: &Form, face: u32) -> bool {
+    let near = ON * faces.rounding;
+    faces.faces[face as usize].corners.iter().all(|k| form.distance(&faces.point(*k)).abs() <= near)
 }
 
 /// Whether the axis of a form goes through a face: then it is a flat end, not a facet of the round.
@@ -333,6 +364,11 @@ fn grow(search: &mut Search<'_>, fit: Fit, window: &[u32]) -> Option<Region> {
         }
         fitted = members.len();
     }
+    let strict = members.len();
+    members.retain(|f| lies_on(faces, &fit.form, *f));
+    if 10 * members.len() < 9 * strict || !window.iter().any(|f| members.contains(f)) {
+        return None;
+    }
     members.sort_unstable();
     let area = members.iter().map(|f| faces.faces[*f as usize].area).sum();
     let region = Region { form: fit.form, faces: members, area, weak: true, few: false };
@@ -364,30 +400,30 @@ fn enough(faces: &Faces<'_>, region: Region) -> Option<Region> {
     match region.form {
         Form::Cylinder { .. } | Form::Cone { .. } => {
             let [around, _] = levels(faces, &region.form, &points);
-            let weak = !is_only_quadric(faces, &points);
+            let weak = quadrics(faces, &points) != 1;
             (3 <= around).then_some(Region { few: around < 4, weak, ..region })
         }
         Form::Sphere { .. } => {
-            let weak = !is_only_quadric(faces, &points);
+            let weak = quadrics(faces, &points) != 1;
             (2 < region.faces.len()).then_some(Region { weak, ..region })
         }
         Form::Torus { .. } => {
             let [around, tube] = levels(faces, &region.form, &points);
-            let weak = around < 5 || tube < 5 || points.len() < 3 * 7;
+            let weak = around < 5 || tube < 5 || points.len() < 3 * 7 || quadrics(faces, &points) != 0;
             (3 <= around && 3 <= tube).then_some(Region { weak, ..region })
         }
         Form::Plane { .. } | Form::Free => None,
     }
 }
 
-/// Whether one quadric only goes through the points; through points on two circles or on four lines of a
-/// cylinder there go many.
+/// How many quadrics go through the points within rounding: none, one, or a family (two circles, four
+/// lines of a cylinder).
 ///
-/// The second smallest eigenvalue of the normal equations of a general quadric, points scaled to unit
-/// spread in each principal direction, against rounding.
-fn is_only_quadric(faces: &Faces<'_>, points: &[Vec3]) -> bool {
+/// The two smallest eigenvalues of the normal equations of a general quadric, points scaled to unit spread
+/// in each principal direction, against rounding.
+fn quadrics(faces: &Faces<'_>, points: &[Vec3]) -> usize {
     if points.len() < 9 {
-        return false;
+        return 2;
     }
     let n = points.len() as f64;
     let middle = points.iter().sum::<Vec3>() / n;
@@ -395,8 +431,8 @@ fn is_only_quadric(faces: &Faces<'_>, points: &[Vec3]) -> bool {
     let eigen = SymmetricEigen::new(moment);
     let spans = eigen.eigenvalues.map(|x| x.max(0.0).sqrt());
     let blur = faces.rounding / spans.min();
-    if blur.is_nan() || 0.05 <= blur {
-        return false;
+    if !blur.is_finite() || MUDDY <= blur {
+        return 2;
     }
     let mut gram = SMatrix::<f64, 10, 10>::zeros();
     for p in points {
@@ -407,7 +443,9 @@ fn is_only_quadric(faces: &Faces<'_>, points: &[Vec3]) -> bool {
     }
     let mut values: Vec<f64> = SymmetricEigen::new(gram).eigenvalues.iter().copied().collect();
     values.sort_by(f64::total_cmp);
-    (UNIQUE * blur).max(UNIQUE_LEAST) < values[1].max(0.0).sqrt()
+    let rounding = |least: f64| least.max(UNIQUE * blur);
+    let is_none = |value: f64, least: f64| rounding(least) < value.max(0.0).sqrt();
+    usize::from(!is_none(values[0], NONE_LEAST)) + usize::from(!is_none(values[1], UNIQUE_LEAST))
 }
 
 /// Different places of points around the axis, and along it or around the tube.

@@ -10,6 +10,7 @@ mod case;
 mod circuit;
 mod cli;
 mod fixtures;
+mod forms;
 mod geometry;
 mod golden;
 mod kernels;
