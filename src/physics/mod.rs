@@ -15,6 +15,7 @@ pub mod gap;
 pub mod look;
 pub mod rim;
 pub mod solved;
+pub mod strength;
 pub mod unit;
 
 use crate::base::si::EPS0;

@@ -196,14 +196,46 @@ pub struct Edge {
     pub exponent: f64,
     /// Voltage case.
     pub case: String,
-    /// K of E = K·s^exponent where it is highest along the edge [V·m^(−1−exponent)].
+    /// K of E = K·s^exponent at the middle of the edge [V·m^(−1−exponent)].
     pub strength: f64,
-    /// One end [m].
+    /// Its bar [V·m^(−1−exponent)].
+    #[serde(default)]
+    pub strength_bar: f64,
+    /// One end; of a closed edge, a place on it [m].
     pub from_metre: [f64; 3],
-    /// Other end [m].
+    /// Other end; of a closed edge, the place half way around [m].
     pub to_metre: [f64; 3],
-    /// The field law at stated distances.
+    /// Whether it comes back to its start.
+    #[serde(default)]
+    pub closed: bool,
+    /// Length [m].
+    #[serde(default)]
+    pub length_metre: f64,
+    /// K at several places along it.
+    #[serde(default)]
+    pub along: Vec<EdgePlace>,
+    /// The field law at stated distances, at the middle.
     pub field_at: Vec<FieldAt>,
+    /// Radius that the case declares for it [m].
+    #[serde(default)]
+    pub edge_radius_metre: Option<f64>,
+    /// Highest field on the rounding away from corners, if a radius is declared [V/m].
+    #[serde(default)]
+    pub field_v_per_m: Option<f64>,
+    /// Its bar [V/m].
+    #[serde(default)]
+    pub bar_v_per_m: Option<f64>,
+}
+
+/// K at a place of an edge.
+#[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
+pub struct EdgePlace {
+    /// The place [m].
+    pub at_metre: [f64; 3],
+    /// K there [V·m^(−1−exponent)].
+    pub strength: f64,
+    /// Its bar [V·m^(−1−exponent)].
+    pub bar: f64,
 }
 
 /// Field at a distance from an edge.

@@ -20,7 +20,6 @@ use crate::circuit;
 use crate::mesh::Net;
 use crate::mesh::weld;
 use crate::operator::Sources;
-use crate::physics::edges;
 use crate::physics::field;
 use crate::physics::look;
 use crate::physics::solved::Bar;
@@ -396,47 +395,4 @@ pub(super) fn medium_name(medium: look::Medium, solved: &Solved) -> String {
         look::Medium::BehindEarth => "behind earth".to_owned(),
         look::Medium::Metal(body) => solved.panels.assembly.bodies[body].name.clone(),
     }
-}
-
-/// Edges with an unbounded field in one voltage case, strongest first within each part.
-pub(super) fn edge_records(case_name: &str, solved: &Solved, potentials: &[f64]) -> Vec<crate::record::Edge> {
-    let normal = field::normal_field(solved, potentials);
-    let mut sharp = edges::sharp_edges(solved, &normal);
-    sharp.sort_by(|a, b| a.body.cmp(&b.body).then(b.strength.total_cmp(&a.strength)));
-    let mut kept: BTreeMap<usize, usize> = BTreeMap::new();
-    sharp.retain(|edge| {
-        let count = kept.entry(edge.body).or_default();
-        *count += 1;
-        *count <= MOST_EDGES
-    });
-    let record = |edge: &edges::SharpEdge| crate::record::Edge {
-        part: solved.panels.assembly.bodies[edge.body].name.clone(),
-        angle_deg: edge.angle.to_degrees(),
-        exponent: edge.exponent,
-        case: case_name.to_owned(),
-        strength: edge.strength,
-        from_metre: edge.ends[0].into(),
-        to_metre: edge.ends[1].into(),
-        field_at: field_at(solved, edge),
-    };
-    sharp.iter().map(record).collect()
-}
-
-/// Edges stored for each part and voltage case: the strongest.
-const MOST_EDGES: usize = 12;
-
-/// Distances at which the field law is stated, in sizes of the part [1].
-const STATED: [f64; 3] = [1e-3, 3e-3, 1e-2];
-
-fn field_at(solved: &Solved, edge: &edges::SharpEdge) -> Vec<crate::record::FieldAt> {
-    let (lo, hi) = weld::bounds(&solved.panels.assembly.bodies[edge.body].surface.welded.points);
-    let size = (hi - lo).max();
-    let at = |share: &f64| {
-        let distance_metre = share * size;
-        crate::record::FieldAt {
-            distance_metre,
-            field_v_per_m: edge.strength * distance_metre.powf(edge.exponent),
-        }
-    };
-    STATED.iter().map(at).collect()
 }

@@ -1,6 +1,6 @@
 //! Results of the voltage cases.
 
-use super::record::edge_records;
+use super::edges::Edges;
 use super::record::medium_name;
 use super::state::States;
 use crate::case::Case;
@@ -60,13 +60,14 @@ pub(super) fn results(
     let (mut cases, mut edges, mut potentials) = (Vec::new(), Vec::new(), Vec::new());
     let charge_bars: Vec<f64> =
         (0..solved.n_rows()).map(|i| bars[i][i] / solved.matrix[i][i].abs()).collect();
+    let sharp = Edges::find(solved, sources);
     for (voltages, states) in case.voltage_cases.iter().zip(states) {
         let settled = circuit::settle(&solved.matrix, &states.rows, &states.groups)?;
         let peaks = field::peaks(solved, sources, &settled.potentials, &charge_bars);
         let maxima = peaks.iter().map(|peak| maximum(&case.electrodes[peak.body], peak)).collect();
         let floating = floating(states);
         cases.push(one(&voltages.name, voltages.value_is, solved, &settled, &floating, maxima));
-        edges.extend(edge_records(&voltages.name, solved, &settled.potentials));
+        edges.extend(sharp.records(&voltages.name, solved, &settled.potentials, &charge_bars));
         for (look, record) in case.looks.iter().zip(&mut looks) {
             let seen = look::look(solved, sources, &map, &settled.potentials, &look.points);
             record.potential_volt.insert(voltages.name.clone(), seen.iter().map(|s| s.potential).collect());
