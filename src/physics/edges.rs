@@ -97,6 +97,12 @@ impl Edge {
         self.segments[..k].iter().map(Segment::length).sum::<f64>() + 0.5 * self.segments[k].length()
     }
 
+    /// Largest turn from piece to piece [rad].
+    pub fn largest_turn(&self) -> f64 {
+        let turn = |pair: &[Segment]| pair[0].tangent().dot(&pair[1].tangent()).clamp(-1.0, 1.0).acos();
+        self.segments.windows(2).map(turn).fold(0.0, f64::max)
+    }
+
     /// Whether all pieces run in one direction.
     pub fn straight(&self) -> bool {
         let t = self.segments[0].tangent();
@@ -138,7 +144,8 @@ pub fn edges(panels: &Panels) -> Vec<Edge> {
             crease.facets.iter().any(|f| exposed[*f as usize])
                 && (!alone || sharp_angle(&part.surface, crease) < SEAM)
         };
-        let drawn = part.surface.creases.iter().filter(sharp).filter_map(|crease| drawn(&part.surface, crease));
+        let drawn =
+            part.surface.creases.iter().filter(sharp).filter_map(|crease| drawn(&part.surface, crease));
         let segments = if alone {
             drawn.collect()
         } else {
@@ -326,7 +333,8 @@ fn chained(body: usize, mut segments: Vec<Segment>) -> Vec<Edge> {
             held.push((k, entry));
             at = next[k][1 - entry];
         }
-        let run = |(k, entry): &(usize, usize)| if *entry == 0 { segments[*k] } else { segments[*k].turned() };
+        let run =
+            |(k, entry): &(usize, usize)| if *entry == 0 { segments[*k] } else { segments[*k].turned() };
         found.push(Edge { body, segments: held.iter().map(run).collect(), closed });
     }
     segments.clear();

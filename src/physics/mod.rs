@@ -14,6 +14,7 @@ pub mod field;
 pub mod gap;
 pub mod look;
 pub mod rim;
+pub mod rounding;
 pub mod solved;
 pub mod strength;
 pub mod unit;

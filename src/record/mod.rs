@@ -72,6 +72,9 @@ pub struct Record {
     pub parts: Vec<Part>,
     /// Creases and rims, those with an unbounded field.
     pub edges: Vec<Edge>,
+    /// Corners at which they end.
+    #[serde(default)]
+    pub corners: Vec<Corner>,
     /// Potential and field at the places asked for.
     pub looks: Vec<Look>,
     /// Results for each set of applied potentials.
@@ -190,6 +193,9 @@ pub struct Part {
 pub struct Edge {
     /// Electrode name.
     pub part: String,
+    /// `edge`, or `seam`: only a turn from facet to facet of a surface taken as drawn.
+    #[serde(default = "edge_word")]
+    pub kind: String,
     /// Angle through the metal [degrees].
     pub angle_deg: f64,
     /// Exponent of distance in the field law, π/(2π−w) − 1 [1].
@@ -227,6 +233,11 @@ pub struct Edge {
     pub bar_v_per_m: Option<f64>,
 }
 
+/// The kind of an edge in records that do not say it.
+fn edge_word() -> String {
+    "edge".to_owned()
+}
+
 /// K at a place of an edge.
 #[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
 pub struct EdgePlace {
@@ -236,6 +247,33 @@ pub struct EdgePlace {
     pub strength: f64,
     /// Its bar [V·m^(−1−exponent)].
     pub bar: f64,
+    /// Highest field on the declared rounding here, at least five radii from a corner [V/m].
+    #[serde(default)]
+    pub field_v_per_m: Option<f64>,
+    /// Its bar [V/m].
+    #[serde(default)]
+    pub bar_v_per_m: Option<f64>,
+}
+
+/// A corner at which sharp edges end: E ~ r^exponent.
+#[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
+pub struct Corner {
+    /// Electrode name.
+    pub part: String,
+    /// Voltage case.
+    pub case: String,
+    /// The corner [m].
+    pub at_metre: [f64; 3],
+    /// Exponent of distance [1].
+    pub exponent: f64,
+    /// Edges that end there.
+    pub edges: usize,
+    /// Radius that the case declares [m].
+    pub edge_radius_metre: Option<f64>,
+    /// Highest field on the rounding, if a radius is declared [V/m].
+    pub field_v_per_m: Option<f64>,
+    /// Its bar [V/m].
+    pub bar_v_per_m: Option<f64>,
 }
 
 /// Field at a distance from an edge.

@@ -99,9 +99,10 @@ pub(super) fn outcome(
         potential_coefficients_bar_per_farad: coefficient_bars(solved, &inverse),
         potential_coefficients_per_farad: inverse,
         checks,
-        findings: findings(case, solved),
+        findings: findings(case, solved, &voltage.findings),
         parts: parts(case, solved),
         edges: voltage.edges,
+        corners: voltage.corners,
         looks: voltage.looks,
         voltage_cases: voltage.cases,
         budget: budget(solved, &bars, &earth_bars, &earth),
@@ -138,7 +139,7 @@ fn rows(case: &Case, solved: &Solved) -> Vec<RowInfo> {
     solved.panels.assembly.rows.iter().map(info).collect()
 }
 
-fn findings(case: &Case, solved: &Solved) -> Vec<FindingRecord> {
+fn findings(case: &Case, solved: &Solved, more: &[Finding]) -> Vec<FindingRecord> {
     let stored = |finding: &Finding| FindingRecord {
         severity: finding.severity.word().to_owned(),
         code: finding.code.to_owned(),
@@ -147,6 +148,7 @@ fn findings(case: &Case, solved: &Solved) -> Vec<FindingRecord> {
     };
     let mut all: Vec<FindingRecord> = solved.panels.assembly.findings.iter().map(stored).collect();
     all.extend(solved_findings(case, solved).iter().map(stored));
+    all.extend(more.iter().map(stored));
     if case.accuracy.max_field.is_some() {
         all.push(FindingRecord {
             severity: "note".to_owned(),

@@ -52,6 +52,7 @@ pub(crate) fn record() -> Record {
         findings: findings(),
         parts: vec![part()],
         edges: vec![edge()],
+        corners: Vec::new(),
         looks: vec![look()],
         voltage_cases: vec![crest_case(), rms_case()],
         budget: Budget { entries: vec![budget_line()] },
@@ -103,6 +104,7 @@ fn part() -> Part {
 fn edge() -> Edge {
     Edge {
         part: "foot".into(),
+        kind: "edge".into(),
         angle_deg: 90.0,
         exponent: -1.0 / 3.0,
         case: "100 kV peak applied".into(),
@@ -110,7 +112,13 @@ fn edge() -> Edge {
         strength_bar: 2e3,
         closed: false,
         length_metre: 0.04,
-        along: vec![EdgePlace { at_metre: [0.02, 0.0, 0.1], strength: 1.2e5, bar: 2e3 }],
+        along: vec![EdgePlace {
+            at_metre: [0.02, 0.0, 0.1],
+            strength: 1.2e5,
+            bar: 2e3,
+            field_v_per_m: None,
+            bar_v_per_m: None,
+        }],
         edge_radius_metre: None,
         field_v_per_m: None,
         bar_v_per_m: None,
