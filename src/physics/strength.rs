@@ -31,7 +31,7 @@ pub struct Place {
     pub reach: f64,
     /// `strength[j]`: K per volt on row j [V·m^(−n) per V].
     pub strength: Vec<f64>,
-    /// The same by a fit of other order, for the bar.
+    /// The same by a fit of other order, for the bar [V·m^(−n) per V].
     pub other: Vec<f64>,
     /// Part of the mean over an arc that panels of finite size make, at the middle radius [V·m^(−n) per V].
     pub unresolved: Vec<f64>,

@@ -291,15 +291,12 @@ impl<'a> Edges<'a> {
     /// A warning where the radius of a body is not small against it.
     fn not_small(&self, body: usize, held: &[Held]) -> Option<Finding> {
         let radius = self.radius(body)?;
-        let own = (0..self.edges.len()).filter(|e| self.edges[*e].body == body);
         let mut worst: Option<(f64, Vec3)> = None;
-        for e in own {
-            for (place, rounded) in self.places[e].iter().zip(&held[e].rounded) {
+        for e in (0..self.edges.len()).filter(|e| self.edges[*e].body == body) {
+            for (k, (place, rounded)) in self.places[e].iter().zip(&held[e].rounded).enumerate() {
                 let terms = rounded.map_or(0.0, |r| r.terms).max(radius / place.reach * REACH_SHARE);
-                let room = place.along.min(self.edges[e].length() - place.along);
-                let counts = self.edges[e].closed
-                    || rounding::OFF_CORNER * radius <= room
-                    || held[e].middle.is_some_and(|m| self.places[e][m].along == place.along);
+                // Beside corners the corner decides, but the middle always counts.
+                let counts = rounded.is_some() || held[e].middle == Some(k);
                 if counts && worst.is_none_or(|(most, _)| most < terms) {
                     worst = Some((terms, place.at));
                 }
