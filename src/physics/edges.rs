@@ -168,6 +168,21 @@ pub fn edges(panels: &Panels) -> Vec<Edge> {
     found
 }
 
+/// Exposed creases that bulge out by less than what makes an edge: how many there are, and where the sharpest stands.
+pub fn seams(assembly: &Assembly, body: usize) -> Option<(usize, f64, Vec3)> {
+    let surface = &assembly.bodies[body].surface;
+    let exposed = exposed_facets(assembly, body);
+    let seam = |crease: &&Crease| {
+        let angle = sharp_angle(surface, crease);
+        (SEAM..PI).contains(&angle) && crease.facets.iter().any(|f| exposed[*f as usize])
+    };
+    let all: Vec<&Crease> = surface.creases.iter().filter(seam).collect();
+    let angle = |crease: &&Crease| sharp_angle(surface, crease);
+    let sharpest = all.iter().min_by(|a, b| angle(a).total_cmp(&angle(b)))?;
+    let [a, b] = sharpest.ends.map(|k| surface.welded.points[k as usize]);
+    Some((all.len(), PI - angle(sharpest), (a + b) * 0.5))
+}
+
 /// Distance between the middles of two pieces that are the same, in lengths [1].
 const SAME_PLACE: f64 = 1e-4;
 
@@ -253,7 +268,8 @@ fn free_arc(map: &Map, segment: &Segment, at: &Vec3) -> Option<(f64, f64)> {
     let step = 2.0 * PI / AROUND as f64;
     let alpha = |k: usize| (k as f64 + 0.5) * step;
     let free: Vec<bool> = (0..AROUND).map(|k| open(alpha(k))).collect();
-    let first = (0..AROUND).find(|k| !free[*k])?;
+    // Sheets hold no space: what is free all around is as drawn.
+    let Some(first) = (0..AROUND).find(|k| !free[*k]) else { return Some((0.0, 2.0 * PI - segment.angle)) };
     let (mut best, mut run) = ((0, 0), 0);
     for k in 1..=AROUND {
         if free[(first + k) % AROUND] {

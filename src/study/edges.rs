@@ -6,6 +6,7 @@ use crate::base::Vec3;
 use crate::case::Case;
 use crate::case::SurfaceKind;
 use crate::geom::distance;
+use crate::mesh::smooth;
 use crate::operator::Sources;
 use crate::physics::edges;
 use crate::physics::edges::Edge;
@@ -30,6 +31,8 @@ pub(super) struct Edges<'a> {
     places: Vec<Vec<Place>>,
     corners: Vec<Corner>,
     charge_bar: Vec<f64>,
+    /// Whether there were too many edges to hold.
+    cut: bool,
 }
 
 /// What stands at the edges of one voltage case.
@@ -40,7 +43,7 @@ pub(super) struct Found {
     pub(super) corners: Vec<record::Corner>,
     /// For each body what its edges make of the maximum.
     pub(super) tops: Vec<Top>,
-    /// Roundings that are not small against the part.
+    /// Roundings that are not small against the part, and seams.
     pub(super) findings: Vec<Finding>,
 }
 
@@ -49,8 +52,8 @@ pub(super) struct Found {
 pub(super) enum Top {
     /// It has none.
     NoEdge,
-    /// Unbounded, at an edge or (`true`) towards a corner.
-    Unbounded(bool),
+    /// Unbounded; `edge`, `corner` where the field grows towards one, or `seam`.
+    Unbounded(&'static str),
     /// Bounded by the declared radius: value, place and kind (`edge`, `corner` or `smooth`).
     Rounded(Rounded, Vec3, &'static str),
 }
@@ -78,8 +81,10 @@ impl<'a> Edges<'a> {
     pub(super) fn find(case: &'a Case, solved: &'a Solved, sources: &Sources, charge_bar: &[f64]) -> Self {
         let mut edges = edges::edges(&solved.panels);
         // The longest tell most; beyond the limit they are left out.
-        edges.sort_by(|a, b| a.body.cmp(&b.body).then(b.length().total_cmp(&a.length())));
+        edges.sort_by(|a, b| b.length().total_cmp(&a.length()));
+        let cut = MOST_EDGES < edges.len();
         edges.truncate(MOST_EDGES);
+        edges.sort_by_key(|edge| edge.body);
         let room = MOST_PLACES + solved.panels.len() / 8;
         let most = PLACES.into_iter().find(|most| most * edges.len() <= room).unwrap_or(1);
         let places = strength::strengths(solved, sources, &edges, most);
@@ -91,7 +96,7 @@ impl<'a> Edges<'a> {
             row.map_or(worst, |row| charge_bar[row])
         };
         let charge_bar = (0..assembly.bodies.len()).map(of_body).collect();
-        Edges { case, solved, edges, places, corners, charge_bar }
+        Edges { case, solved, edges, places, corners, charge_bar, cut }
     }
 
     /// What stands at the edges at row potentials `v`.
@@ -122,7 +127,8 @@ impl<'a> Edges<'a> {
             self.corners.iter().zip(&laws).filter_map(corner).collect();
         let high = |corner: &record::Corner| corner.field_v_per_m.unwrap_or(0.0);
         corners.sort_by(|a, b| a.0.cmp(&b.0).then(high(&b.1).total_cmp(&high(&a.1))));
-        let findings = (0..self.charge_bar.len()).filter_map(|b| self.not_small(b, &held)).collect();
+        let bodies = 0..self.charge_bar.len();
+        let findings = bodies.flat_map(|b| [self.not_small(b, &held), self.seams(b)]).flatten().collect();
         Found { edges: strongest(edges), corners: strongest(corners), tops, findings }
     }
 
@@ -176,10 +182,10 @@ impl<'a> Edges<'a> {
     fn top(&self, body: usize, held: &[Held], laws: &[Option<(f64, Option<Rounded>)>], v: &[f64]) -> Top {
         let own: Vec<usize> = (0..self.edges.len()).filter(|e| self.edges[*e].body == body).collect();
         if own.is_empty() {
-            return Top::NoEdge;
+            return if self.cut { Top::Unbounded("edge") } else { Top::NoEdge };
         }
-        if self.radius(body).is_none() {
-            return Top::Unbounded(self.grows_to_a_corner(body, &own, held));
+        if self.radius(body).is_none() || self.cut {
+            return Top::Unbounded(self.kind(body, &own, held));
         }
         let at_edges = own.iter().flat_map(|e| {
             let places = self.places[*e].iter().zip(&held[*e].rounded);
@@ -190,7 +196,7 @@ impl<'a> Edges<'a> {
             match law {
                 Some((_, Some(rounded))) => all.push((*rounded, corner.at, "corner")),
                 // A corner that tells no law may be the highest place.
-                _ if 1 < corner.edges.len() => return Top::Unbounded(true),
+                _ if 1 < corner.edges.len() => return Top::Unbounded("corner"),
                 _ => {}
             }
         }
@@ -199,7 +205,7 @@ impl<'a> Edges<'a> {
             Some(high) if one.0.field <= high.0.field => Some(high),
             _ => Some(one),
         });
-        let Some((highest, at, kind)) = best else { return Top::Unbounded(false) };
+        let Some((highest, at, kind)) = best else { return Top::Unbounded("edge") };
         let upper = all.iter().map(|(r, ..)| r.field + r.bar).fold(highest.field, f64::max);
         let bar = highest.bar.max(upper - highest.field);
         Top::Rounded(Rounded { bar, ..*highest }, *at, kind)
@@ -228,6 +234,41 @@ impl<'a> Edges<'a> {
             panels.triangles[p].centroid(),
             "smooth",
         ))
+    }
+
+    /// Kind of the place where the field law is strongest.
+    fn kind(&self, body: usize, own: &[usize], held: &[Held]) -> &'static str {
+        if own.iter().all(|e| self.places[*e].first().is_some_and(|place| self.is_seam(body, place))) {
+            "seam"
+        } else if self.grows_to_a_corner(body, own, held) {
+            "corner"
+        } else {
+            "edge"
+        }
+    }
+
+    /// Whether an edge there is only a turn from facet to facet of a surface taken as drawn.
+    fn is_seam(&self, body: usize, place: &Place) -> bool {
+        let as_drawn = self.case.electrodes[body].surface == SurfaceKind::AsDrawn;
+        as_drawn && PI - place.angle <= smooth::CREASE_ANGLE
+    }
+
+    /// A note on creases so flat that they are taken for seams.
+    fn seams(&self, body: usize) -> Option<Finding> {
+        let (count, turn, at) = edges::seams(&self.solved.panels.assembly, body)?;
+        Some(Finding {
+            severity: Severity::Note,
+            code: "seam",
+            text: format!(
+                "`{}`: {count} {} by less than {:.0}° (the sharpest by {:.2}°): seams between facets, not counted as \
+                 unbounded",
+                self.name(body),
+                if count == 1 { "edge turns" } else { "edges turn" },
+                (PI - edges::SEAM).to_degrees(),
+                turn.to_degrees()
+            ),
+            place: Some(at),
+        })
     }
 
     /// Whether K of the strongest edge grows towards an end.
@@ -265,8 +306,7 @@ impl<'a> Edges<'a> {
         };
         let highest = held.rounded.iter().flatten().max_by(|a, b| a.field.total_cmp(&b.field));
         let half = edge.length() * if edge.closed { 0.5 } else { 1.0 };
-        let as_drawn = self.case.electrodes[edge.body].surface == SurfaceKind::AsDrawn;
-        let seam = as_drawn && PI - place.angle <= crate::mesh::smooth::CREASE_ANGLE;
+        let seam = self.is_seam(edge.body, place);
         let record = record::Edge {
             part: self.name(edge.body),
             kind: if seam { "seam" } else { "edge" }.to_owned(),

@@ -14,7 +14,6 @@ use crate::circuit::Settled;
 use crate::circuit::State;
 use crate::operator::Sources;
 use crate::physics::field;
-use crate::physics::field::Kind;
 use crate::physics::field::Peak;
 use crate::physics::look;
 use crate::physics::solved::Solved;
@@ -149,13 +148,11 @@ pub(super) fn word(value_is: ValueIs) -> &'static str {
 /// A maximum against its limit; `top` is what the edges make of it.
 fn maximum(electrode: &Electrode, peak: &Peak, top: Top) -> Maximum {
     let rounded = if let Top::Rounded(rounded, at, _) = top { Some((rounded, at)) } else { None };
-    let bounded = rounded.is_some() || (peak.kind == Kind::Smooth && top == Top::NoEdge);
+    let bounded = rounded.is_some() || top == Top::NoEdge;
     let [field, bar] = rounded.map_or([peak.field, peak.bar], |(r, _)| [r.field, r.bar]);
     let kind = match top {
-        Top::Rounded(_, _, kind) => kind,
-        Top::Unbounded(true) => "corner",
-        Top::NoEdge if bounded => "smooth",
-        Top::NoEdge | Top::Unbounded(false) => "edge",
+        Top::Rounded(_, _, kind) | Top::Unbounded(kind) => kind,
+        Top::NoEdge => "smooth",
     };
     let limit = electrode.field_limit;
     let judged = match limit {

@@ -268,6 +268,28 @@ fn an_edge_without_a_radius_never_has_a_number() {
     assert_eq!(record.edges.len(), 2);
 }
 
+/// A round bar of 24 sides taken as drawn: its long sides are seams, its ends have rims.
+#[test]
+fn seams_are_told_from_edges() {
+    let round = shapes::scaled(&shapes::cylinder(1.0, 2.0, 1, 2, 24), 1000.0);
+    let record = record("surface = \"as_drawn\"", 300, &round);
+    let count = |kind: &str| record.edges.iter().filter(|edge| edge.kind == kind).count();
+    assert_eq!((count("edge"), count("seam")), (2, 22), "24 are stored, the strongest");
+    let ball = shapes::scaled(&shapes::icosphere(8), 1000.0);
+    let record = self::record("surface = \"as_drawn\"", 1300, &ball);
+    assert_eq!(record.voltage_cases[0].maxima[0].kind, "seam");
+}
+
+/// Two sheets that touch are one conductor, and its rims are still rims.
+#[test]
+fn rims_of_joined_sheets_are_kept() {
+    let pair = [[0.0; 3], [1.0, 0.0, 0.0]].map(|by| shapes::moved(&shapes::rect_sheet(1.0, 1.0, 2, 2), by));
+    let bonds = [vec!["a".to_owned(), "b".to_owned()]];
+    let assembly = solving::assembled(&solving::sheets(pair), &bonds, None);
+    let panels = amberskin::panel::build(std::sync::Arc::new(assembly), None);
+    assert!(6 <= edges::edges(&panels).len());
+}
+
 #[test]
 fn a_radius_that_is_not_small_is_told() {
     let told = |radius: &str| {
