@@ -74,6 +74,9 @@ fn put_electrode(case: &Case, electrode: &Electrode, put: &mut impl FnMut(String
     };
     say("role", role);
     say("sheet", electrode.sheet.to_string());
+    if let Some(radius) = electrode.edge_radius {
+        say("edge_radius", format!("{radius} m"));
+    }
     let angle = electrode.crease_angle.unwrap_or(smooth::CREASE_ANGLE);
     say("crease_angle", degrees(angle));
     let surface = match electrode.surface {

@@ -166,6 +166,8 @@ pub struct Electrode {
     pub role: Role,
     /// Open or thin-walled.
     pub sheet: bool,
+    /// Radius of the rounding of all its sharp edges and rims [m]; `None`: sharp.
+    pub edge_radius: Option<f64>,
     /// Angle between facet normals from which an edge is a crease [rad]; `None`: the default.
     pub crease_angle: Option<f64>,
     /// How the facets are understood.

@@ -86,6 +86,7 @@ fn electrode(
             sink.assume(&format!("{key}.sheet"), "false");
             false
         }),
+        edge_radius: edge_radius(&wire.edge_radius, unit, sink),
         crease_angle: crease_angle(&wire.crease_angle, &key, sink),
         surface: surface(&wire.surface, &key, sink),
         field_limit: field_limit(&wire.field_limit, sink),
@@ -189,6 +190,18 @@ fn surface(field: &wire::Field, key: &str, sink: &mut Sink) -> SurfaceKind {
         sink.assume(&format!("{key}.surface"), "rebuilt");
     }
     value::choice(field, "surface", &kinds, sink).unwrap_or(SurfaceKind::Rebuilt)
+}
+
+/// Radius of edges [m], given as a quantity or as a bare number in the length unit.
+fn edge_radius(field: &wire::Field, unit: f64, sink: &mut Sink) -> Option<f64> {
+    let at = field.as_ref()?;
+    let radius = match at.get_ref() {
+        Value::Whole(_) | Value::Number(_) => {
+            value::number_of(at, "edge_radius", "a length above zero", sink).map(|radius| radius * unit)
+        }
+        _ => value::quantity_of(at, "edge_radius", Dimension::Length, sink),
+    };
+    radius.and_then(|radius| value::above_zero(radius, at, "edge_radius", sink))
 }
 
 fn crease_angle(field: &wire::Field, key: &str, sink: &mut Sink) -> Option<f64> {

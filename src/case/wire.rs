@@ -90,6 +90,7 @@ pub(super) struct Electrode {
     pub(super) role: Field,
     pub(super) follows: Field,
     pub(super) sheet: Field,
+    pub(super) edge_radius: Field,
     pub(super) crease_angle: Field,
     pub(super) surface: Field,
     pub(super) field_limit: Field,

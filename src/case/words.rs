@@ -100,6 +100,7 @@ pub(super) static ELECTRODE: Words = Words {
         ("role", Holds::Value),
         ("follows", Holds::Value),
         ("sheet", Holds::Value),
+        ("edge_radius", Holds::Value),
         ("crease_angle", Holds::Value),
         ("surface", Holds::Value),
         ("field_limit", Holds::Value),
@@ -107,7 +108,7 @@ pub(super) static ELECTRODE: Words = Words {
         ("place", Holds::Table(&PLACE)),
         ("drawing", Holds::Value),
     ],
-    planned: &["edge_radius"],
+    planned: &[],
 };
 
 pub(super) static PLACE: Words = Words {

@@ -54,6 +54,7 @@ Further words: [study] number, issue, title, question, prepared, checked, approv
 left_out; [units] capacitance, field (for printing); [surroundings] relative_permittivity;
 [[electrode]] sheet = true (open or thin-walled), surface = \"rebuilt\" or \"as_drawn\",
 crease_angle = \"30 deg\", shell = 0 or a point it holds, drawing,
+edge_radius = \"0.5 mm\" (rounds all its sharp edges and rims: maxima get numbers there),
 place = { shift = [x, y, z], rotate = { axis = [0, 0, 1], angle = \"30 deg\" }, scale = 1 };
 [[bond]] members = [\"a\", \"b\"], one of which may be \"earth\";
 [[look]] point = [x, y, z], or sheet = { corner = [x, y, z], along = [x, y, z],

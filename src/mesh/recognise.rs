@@ -53,7 +53,12 @@ pub struct Patches {
 impl Patches {
     /// One patch of no known form.
     pub fn none(n_facets: usize) -> Self {
-        Patches { of_facet: vec![0; n_facets], forms: vec![Form::Free], borders: Vec::new(), curves: Vec::new() }
+        Patches {
+            of_facet: vec![0; n_facets],
+            forms: vec![Form::Free],
+            borders: Vec::new(),
+            curves: Vec::new(),
+        }
     }
 }
 

@@ -14,7 +14,9 @@ pub mod field;
 pub mod gap;
 pub mod look;
 pub mod rim;
+pub mod rounding;
 pub mod solved;
+pub mod strength;
 pub mod unit;
 
 use crate::base::si::EPS0;

@@ -72,6 +72,9 @@ pub struct Record {
     pub parts: Vec<Part>,
     /// Creases and rims, those with an unbounded field.
     pub edges: Vec<Edge>,
+    /// Corners at which they end.
+    #[serde(default)]
+    pub corners: Vec<Corner>,
     /// Potential and field at the places asked for.
     pub looks: Vec<Look>,
     /// Results for each set of applied potentials.
@@ -190,20 +193,87 @@ pub struct Part {
 pub struct Edge {
     /// Electrode name.
     pub part: String,
+    /// `edge`, or `seam`: only a turn from facet to facet of a surface taken as drawn.
+    #[serde(default = "edge_word")]
+    pub kind: String,
     /// Angle through the metal [degrees].
     pub angle_deg: f64,
     /// Exponent of distance in the field law, π/(2π−w) − 1 [1].
     pub exponent: f64,
     /// Voltage case.
     pub case: String,
-    /// K of E = K·s^exponent where it is highest along the edge [V·m^(−1−exponent)].
+    /// K of E = K·s^exponent at the middle of the edge [V·m^(−1−exponent)].
     pub strength: f64,
-    /// One end [m].
+    /// Its bar [V·m^(−1−exponent)].
+    #[serde(default)]
+    pub strength_bar: f64,
+    /// One end; of a closed edge, a place on it [m].
     pub from_metre: [f64; 3],
-    /// Other end [m].
+    /// Other end; of a closed edge, the place half way around [m].
     pub to_metre: [f64; 3],
-    /// The field law at stated distances.
+    /// Whether it comes back to its start.
+    #[serde(default)]
+    pub closed: bool,
+    /// Length [m].
+    #[serde(default)]
+    pub length_metre: f64,
+    /// K at several places along it.
+    #[serde(default)]
+    pub along: Vec<EdgePlace>,
+    /// The field law at stated distances, at the middle.
     pub field_at: Vec<FieldAt>,
+    /// Radius that the case declares for it [m].
+    #[serde(default)]
+    pub edge_radius_metre: Option<f64>,
+    /// Highest field on the rounding away from corners, if a radius is declared [V/m].
+    #[serde(default)]
+    pub field_v_per_m: Option<f64>,
+    /// Its bar [V/m].
+    #[serde(default)]
+    pub bar_v_per_m: Option<f64>,
+}
+
+/// The kind of an edge in records that do not say it.
+fn edge_word() -> String {
+    "edge".to_owned()
+}
+
+/// K at a place of an edge.
+#[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
+pub struct EdgePlace {
+    /// The place [m].
+    pub at_metre: [f64; 3],
+    /// K there [V·m^(−1−exponent)].
+    pub strength: f64,
+    /// Its bar [V·m^(−1−exponent)].
+    pub bar: f64,
+    /// Highest field on the declared rounding here, at least five radii from a corner [V/m].
+    #[serde(default)]
+    pub field_v_per_m: Option<f64>,
+    /// Its bar [V/m].
+    #[serde(default)]
+    pub bar_v_per_m: Option<f64>,
+}
+
+/// A corner at which sharp edges end: E ~ r^exponent.
+#[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
+pub struct Corner {
+    /// Electrode name.
+    pub part: String,
+    /// Voltage case.
+    pub case: String,
+    /// The corner [m].
+    pub at_metre: [f64; 3],
+    /// Exponent of distance [1].
+    pub exponent: f64,
+    /// Edges that end there.
+    pub edges: usize,
+    /// Radius that the case declares [m].
+    pub edge_radius_metre: Option<f64>,
+    /// Highest field on the rounding, if a radius is declared [V/m].
+    pub field_v_per_m: Option<f64>,
+    /// Its bar [V/m].
+    pub bar_v_per_m: Option<f64>,
 }
 
 /// Field at a distance from an edge.

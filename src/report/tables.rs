@@ -240,18 +240,25 @@ pub(crate) fn judged(word: &str) -> String {
 
 fn edge_text(edge: &Edge, case: &VoltageCase, printing: &Printing) -> String {
     let place = |at: &[f64; 3]| digits::place(at, printing.length);
+    let what = if edge.kind == "seam" { "seam between facets taken as drawn" } else { "unbounded at edge" };
+    let run = if edge.closed { "closed, through" } else { "from" };
     let mut text = format!(
-        "    {}: unbounded at edge, {} degrees through the metal, from {} to {} {}\n",
+        "    {}: {what}, {} degrees through the metal, {run} {} {} {} {}\n",
         clean(&edge.part),
         digits::significant(edge.angle_deg, 4),
         place(&edge.from_metre),
+        if edge.closed { "and" } else { "to" },
         place(&edge.to_metre),
         printing.length_name
     );
+    let strength = if 0.0 < edge.strength_bar {
+        digits::cell(edge.strength, edge.strength_bar)
+    } else {
+        digits::significant(edge.strength, 4)
+    };
     text += &format!(
-        "      E = K s^({}) with s the distance from the edge, K = {} V m^({})",
+        "      E = K s^({}) with s the distance from the edge, K = {strength} V m^({})",
         digits::significant(edge.exponent, 4),
-        digits::significant(edge.strength, 4),
         digits::significant(-1.0 - edge.exponent, 4)
     );
     for at in &edge.field_at {
@@ -261,6 +268,17 @@ fn edge_text(edge: &Edge, case: &VoltageCase, printing: &Printing) -> String {
         };
         let distance = digits::significant(at.distance_metre / printing.length, 4);
         text += &format!("; at {distance} {}: {}", printing.length_name, in_time(case, &show));
+    }
+    if let (Some(radius), Some(field), Some(bar)) =
+        (edge.edge_radius_metre, edge.field_v_per_m, edge.bar_v_per_m)
+    {
+        let show = |k: f64| {
+            let unit = &printing.field_name;
+            format!("{} {unit}", digits::cell(k * field / printing.field, k * bar / printing.field))
+        };
+        let radius = digits::significant(radius / printing.length, 4);
+        let unit = &printing.length_name;
+        text += &format!("; rounded with {radius} {unit}: {} away from corners", in_time(case, &show));
     }
     text + "\n"
 }

@@ -6,6 +6,7 @@
 
 mod bodies;
 mod checks;
+mod edges;
 mod inspect;
 mod prove;
 mod prove_shapes;

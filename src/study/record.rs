@@ -20,7 +20,6 @@ use crate::circuit;
 use crate::mesh::Net;
 use crate::mesh::weld;
 use crate::operator::Sources;
-use crate::physics::edges;
 use crate::physics::field;
 use crate::physics::look;
 use crate::physics::solved::Bar;
@@ -100,9 +99,10 @@ pub(super) fn outcome(
         potential_coefficients_bar_per_farad: coefficient_bars(solved, &inverse),
         potential_coefficients_per_farad: inverse,
         checks,
-        findings: findings(case, solved),
+        findings: findings(case, solved, &voltage.findings),
         parts: parts(case, solved),
         edges: voltage.edges,
+        corners: voltage.corners,
         looks: voltage.looks,
         voltage_cases: voltage.cases,
         budget: budget(solved, &bars, &earth_bars, &earth),
@@ -139,7 +139,7 @@ fn rows(case: &Case, solved: &Solved) -> Vec<RowInfo> {
     solved.panels.assembly.rows.iter().map(info).collect()
 }
 
-fn findings(case: &Case, solved: &Solved) -> Vec<FindingRecord> {
+fn findings(case: &Case, solved: &Solved, more: &[Finding]) -> Vec<FindingRecord> {
     let stored = |finding: &Finding| FindingRecord {
         severity: finding.severity.word().to_owned(),
         code: finding.code.to_owned(),
@@ -148,6 +148,7 @@ fn findings(case: &Case, solved: &Solved) -> Vec<FindingRecord> {
     };
     let mut all: Vec<FindingRecord> = solved.panels.assembly.findings.iter().map(stored).collect();
     all.extend(solved_findings(case, solved).iter().map(stored));
+    all.extend(more.iter().map(stored));
     if case.accuracy.max_field.is_some() {
         all.push(FindingRecord {
             severity: "note".to_owned(),
@@ -396,47 +397,4 @@ pub(super) fn medium_name(medium: look::Medium, solved: &Solved) -> String {
         look::Medium::BehindEarth => "behind earth".to_owned(),
         look::Medium::Metal(body) => solved.panels.assembly.bodies[body].name.clone(),
     }
-}
-
-/// Edges with an unbounded field in one voltage case, strongest first within each part.
-pub(super) fn edge_records(case_name: &str, solved: &Solved, potentials: &[f64]) -> Vec<crate::record::Edge> {
-    let normal = field::normal_field(solved, potentials);
-    let mut sharp = edges::sharp_edges(solved, &normal);
-    sharp.sort_by(|a, b| a.body.cmp(&b.body).then(b.strength.total_cmp(&a.strength)));
-    let mut kept: BTreeMap<usize, usize> = BTreeMap::new();
-    sharp.retain(|edge| {
-        let count = kept.entry(edge.body).or_default();
-        *count += 1;
-        *count <= MOST_EDGES
-    });
-    let record = |edge: &edges::SharpEdge| crate::record::Edge {
-        part: solved.panels.assembly.bodies[edge.body].name.clone(),
-        angle_deg: edge.angle.to_degrees(),
-        exponent: edge.exponent,
-        case: case_name.to_owned(),
-        strength: edge.strength,
-        from_metre: edge.ends[0].into(),
-        to_metre: edge.ends[1].into(),
-        field_at: field_at(solved, edge),
-    };
-    sharp.iter().map(record).collect()
-}
-
-/// Edges stored for each part and voltage case: the strongest.
-const MOST_EDGES: usize = 12;
-
-/// Distances at which the field law is stated, in sizes of the part [1].
-const STATED: [f64; 3] = [1e-3, 3e-3, 1e-2];
-
-fn field_at(solved: &Solved, edge: &edges::SharpEdge) -> Vec<crate::record::FieldAt> {
-    let (lo, hi) = weld::bounds(&solved.panels.assembly.bodies[edge.body].surface.welded.points);
-    let size = (hi - lo).max();
-    let at = |share: &f64| {
-        let distance_metre = share * size;
-        crate::record::FieldAt {
-            distance_metre,
-            field_v_per_m: edge.strength * distance_metre.powf(edge.exponent),
-        }
-    };
-    STATED.iter().map(at).collect()
 }

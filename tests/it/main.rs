@@ -9,6 +9,7 @@ mod broken_toml;
 mod case;
 mod circuit;
 mod cli;
+mod edges;
 mod fixtures;
 mod forms;
 mod geometry;
