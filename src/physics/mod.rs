@@ -13,7 +13,10 @@ pub mod faceting;
 pub mod field;
 pub mod gap;
 pub mod look;
+pub mod patch;
+mod regions;
 pub mod rim;
+mod search;
 pub mod solved;
 pub mod unit;
 

@@ -17,6 +17,7 @@ use crate::physics::field::Peak;
 use crate::physics::look;
 use crate::physics::solved::Solved;
 use crate::record::Edge;
+use crate::record::FurtherMaximum;
 use crate::record::Look;
 use crate::record::Maximum;
 use crate::record::VoltageCase;
@@ -40,7 +41,6 @@ pub(super) fn results(
     solved: &Solved,
     sources: &Sources,
     states: &[States],
-    bars: &[Vec<f64>],
 ) -> Result<Voltage, CircuitError> {
     let map = look::Map::new(&solved.panels);
     let media = |points: &[crate::base::Vec3]| -> Vec<String> {
@@ -58,11 +58,10 @@ pub(super) fn results(
         })
         .collect();
     let (mut cases, mut edges, mut potentials) = (Vec::new(), Vec::new(), Vec::new());
-    let charge_bars: Vec<f64> =
-        (0..solved.n_rows()).map(|i| bars[i][i] / solved.matrix[i][i].abs()).collect();
+    let survey = field::survey(&solved.panels);
     for (voltages, states) in case.voltage_cases.iter().zip(states) {
         let settled = circuit::settle(&solved.matrix, &states.rows, &states.groups)?;
-        let peaks = field::peaks(solved, sources, &settled.potentials, &charge_bars);
+        let peaks = field::surveyed_peaks(&survey, solved, sources, &settled.potentials);
         let maxima = peaks.iter().map(|peak| maximum(&case.electrodes[peak.body], peak)).collect();
         let floating = floating(states);
         cases.push(one(&voltages.name, voltages.value_is, solved, &settled, &floating, maxima));
@@ -151,10 +150,21 @@ fn maximum(electrode: &Electrode, peak: &Peak) -> Maximum {
         smooth_v_per_m: bounded.then_some(peak.field),
         at_metre: [peak.at.x, peak.at.y, peak.at.z],
         curvature_per_metre: peak.curvature,
+        area_above_90_m2: peak.area_above.map(|[most, _]| most),
+        area_above_80_m2: peak.area_above.map(|[_, more]| more),
+        further: peak.further.iter().map(further).collect(),
         limit_v_per_m: limit.map(|(limit, _)| limit),
         limit_is: limit.map(|(_, is)| word(is).to_owned()),
         // A field under its bar leaves no margin that means anything.
         margin: limit.filter(|_| bounded && peak.bar < peak.field).map(|(limit, _)| limit / peak.field - 1.0),
         judged: judged.to_owned(),
+    }
+}
+
+fn further(further: &field::Further) -> FurtherMaximum {
+    FurtherMaximum {
+        field_v_per_m: further.field,
+        bar_v_per_m: further.bar,
+        at_metre: [further.at.x, further.at.y, further.at.z],
     }
 }

@@ -64,7 +64,7 @@ pub(crate) struct Asked {
 pub(crate) fn refined(assembly: Assembly, plane: Option<Plane>, asked: Asked) -> Finished {
     let start = adapt::at_least(FIRST_PANELS, panel::build(Arc::new(assembly), plane));
     let limits = Limits { max_panels: Some(asked.max_panels), time: None, memory: 4e9 };
-    adapt::run(start, 1.0, Demand { capacitance: asked.demand }, &limits, &|_| {}).unwrap()
+    adapt::run(start, 1.0, Demand { capacitance: asked.demand, field: None }, &limits, &|_| {}).unwrap()
 }
 
 /// Bodies without bonds, refined until what is asked is reached.
@@ -77,10 +77,4 @@ pub(crate) fn combination(solved: &Solved, u: &[f64], v: &[f64]) -> (f64, f64) {
     let c = &solved.matrix;
     let value = u.iter().zip(c).map(|(u, row)| u * row.iter().zip(v).map(|(c, v)| c * v).sum::<f64>()).sum();
     (value, Bar::total(&solved.bar(u, v)))
-}
-
-/// Relative bars of the diagonal, for the bars of maxima [1].
-pub(crate) fn charge_bars(solved: &Solved) -> Vec<f64> {
-    let (bars, _) = solved.bars();
-    (0..solved.n_rows()).map(|i| bars[i][i].total() / solved.matrix[i][i]).collect()
 }
