@@ -1,7 +1,11 @@
 //! Refinement that aims at the maxima of smooth bodies.
 //!
 //! A maximum is uncertain by the fit on its patch, which smaller panels there mend, and by the charges, which
-//! the cuts for the capacitance mend.  Ways to steer that were measured: see `tests/it/maxima.rs`.
+//! the cuts for the capacitance mend.  The other way, an adjoint solution of the same matrix for the mean of
+//! the field over a Gaussian of 0.1, 0.2, 0.4 widths `√(2 gap R)` and residual gradient times residual gradient as
+//! the indicator, was measured on two balls 1, 0.2 and 0.1 radii apart: 70 to 99 % of it lies on the panels of the
+//! patch, so it marks the same ones; it moves the mean by 0.002 to 0.15 %, while the fitted maximum was off by
+//! 0.3 to 2.1 %, which is variation over the patch.  So panels are cut until fits over different patches agree.
 
 use crate::geom::distance;
 use crate::panel::Panels;

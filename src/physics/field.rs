@@ -274,8 +274,9 @@ impl Peak {
     pub fn distance(&self, panels: &Panels, p: usize) -> Option<f64> {
         let same = panels.body[p] as usize == self.body
             && 0.0 < panels.triangles[p].normal().dot(&self.top.spot.normal);
-        let fit = self.top.fit.as_ref()?;
-        same.then(|| self.top.patch.frame.distance(&panels.triangles[p].centroid()) / fit.radius)
+        let patch = &self.top.patch;
+        let radius = self.top.fit.as_ref().map_or_else(|| patch.radius(patch.near.len()), |fit| fit.radius);
+        same.then(|| patch.frame.distance(&panels.triangles[p].centroid()) / radius)
     }
 
     /// How much the fitted field changes along each edge of a panel near the place [V/m].

@@ -2,6 +2,7 @@
 use crate::reference::TestBody;
 use crate::shapes::Facet;
 use amberskin::adapt;
+use amberskin::adapt::Aim;
 use amberskin::adapt::Demand;
 use amberskin::adapt::Finished;
 use amberskin::adapt::Limits;
@@ -13,6 +14,7 @@ use amberskin::mesh::accept;
 use amberskin::mesh::assembly;
 use amberskin::mesh::smooth;
 use amberskin::panel;
+use amberskin::physics::capacitance::Matrix;
 use amberskin::physics::solved::Bar;
 use amberskin::physics::solved::Solved;
 use std::sync::Arc;
@@ -65,6 +67,16 @@ pub(crate) fn refined(assembly: Assembly, plane: Option<Plane>, asked: Asked) ->
     let start = adapt::at_least(FIRST_PANELS, panel::build(Arc::new(assembly), plane));
     let limits = Limits { max_panels: Some(asked.max_panels), time: None, memory: 4e9 };
     adapt::run(start, 1.0, Demand { capacitance: asked.demand, field: None }, &limits, &|_| {}).unwrap()
+}
+
+/// Refined for capacitances of 0.5 % and for the maxima at row potentials `v`.
+pub(crate) fn aimed(bodies: &[TestBody], plane: Option<Plane>, v: &[f64], max_field: f64) -> Finished {
+    let assembly = assembled(bodies, &[], plane.as_ref());
+    let start = adapt::at_least(FIRST_PANELS, panel::build(Arc::new(assembly), plane));
+    let limits = Limits { max_panels: Some(6000), time: None, memory: 4e9 };
+    let potentials = |_: &Matrix| vec![v.to_vec()];
+    let aim = Aim { max_field, potentials: &potentials };
+    adapt::run(start, 1.0, Demand { capacitance: 5e-3, field: Some(aim) }, &limits, &|_| {}).unwrap()
 }
 
 /// Bodies without bonds, refined until what is asked is reached.
