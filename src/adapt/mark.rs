@@ -1,5 +1,6 @@
 //! Which panels to cut, and how far the demand is reached.
 
+use super::aim::Aim;
 use super::split;
 use crate::base::threads;
 use crate::physics::estimate::Estimate;
@@ -9,12 +10,14 @@ use crate::physics::solved::Bar;
 use crate::physics::solved::Solved;
 use crate::physics::solved::unit_weight;
 
-/// What is asked of capacitances.
-#[derive(Clone, Copy, Debug, PartialEq)]
-pub struct Demand {
+/// What is asked.
+#[derive(Clone, Copy)]
+pub struct Demand<'a> {
     /// Relative bar: on every diagonal entry, on mutual and earth entries over [`FLOOR`], and for
     /// smaller ones absolute at that floor [1].
     pub capacitance: f64,
+    /// What is asked of maxima, if anything.
+    pub field: Option<Aim<'a>>,
 }
 
 /// Share of √(C_ii C_jj), or of C_ii for earth entries, under which an entry is held to an absolute

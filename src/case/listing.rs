@@ -115,9 +115,7 @@ fn put_accuracy(case: &Case, put: &mut impl FnMut(String, String)) {
     let accuracy = &case.accuracy;
     let mut say = |word: &str, text: String| put(format!("accuracy.{word}"), text);
     say("capacitance", accuracy.capacitance.to_string());
-    if let Some(bar) = accuracy.max_field {
-        say("max_field", format!("{bar} (read, not steered)"));
-    }
+    say("max_field", accuracy.max_field.to_string());
     if let Some(panels) = accuracy.max_panels {
         say("max_panels", panels.to_string());
     }

@@ -209,8 +209,8 @@ pub struct Look {
 pub struct Accuracy {
     /// Relative bar demanded of capacitances [1].
     pub capacitance: f64,
-    /// Relative bar demanded of maxima [1]; read, not steered yet.
-    pub max_field: Option<f64>,
+    /// Relative bar demanded of the maxima of smooth electrodes [1].
+    pub max_field: f64,
     /// Most panels.
     pub max_panels: Option<usize>,
     /// Longest run [s].

@@ -21,6 +21,9 @@ use std::path::PathBuf;
 /// Bar demanded of capacitances where the case does not say [1].
 const CAPACITANCE_BAR: f64 = 0.005;
 
+/// Bar demanded of maxima where the case does not say [1].
+const MAX_FIELD_BAR: f64 = 0.02;
+
 /// The case; to be thrown away if `sink` holds faults afterwards.
 pub(super) fn resolve(file: &wire::File, text: &str, path: &Path, sink: &mut Sink) -> Case {
     let (length_unit, length_name) = length(file, sink);
@@ -153,6 +156,7 @@ fn accuracy(wire: Option<&wire::Accuracy>, sink: &mut Sink) -> Accuracy {
     let wire = wire.unwrap_or(&nothing);
     for (field, word, default) in [
         (&wire.capacitance, "capacitance", "0.5 %"),
+        (&wire.max_field, "max_field", "2 %"),
         (&wire.memory_limit, "memory_limit", "70 % of what is free"),
         (&wire.threads, "threads", "all cores"),
     ] {
@@ -164,7 +168,7 @@ fn accuracy(wire: Option<&wire::Accuracy>, sink: &mut Sink) -> Accuracy {
     let threads = "a whole number of threads, from 1 to 1024";
     Accuracy {
         capacitance: share(&wire.capacitance, "capacitance", sink).unwrap_or(CAPACITANCE_BAR),
-        max_field: share(&wire.max_field, "max_field", sink),
+        max_field: share(&wire.max_field, "max_field", sink).unwrap_or(MAX_FIELD_BAR),
         max_panels: value::count(&wire.max_panels, "max_panels", (1, usize::MAX, panels), sink),
         time_limit: value::positive_quantity(&wire.time_limit, "time_limit", Dimension::Time, sink),
         memory_limit: value::positive_quantity(&wire.memory_limit, "memory_limit", Dimension::Memory, sink),

@@ -40,8 +40,9 @@ A CASE FILE, whole (TOML; paths are relative to the file; dimensions invented):
     name = \"gap\"
     line = { from = [0, 0, 300], to = [0, 0, 350], points = 51 }
 
-    [accuracy]                         # default: capacitance = \"0.5 %\"
-    capacitance = \"0.5 %\"
+    [accuracy]                         # defaults: \"0.5 %\", \"2 %\"
+    capacitance = \"0.5 %\"              # bar of every entry
+    max_field = \"2 %\"                  # bar of the highest field of every smooth electrode
     time_limit = \"10 min\"              # also max_panels, memory_limit, threads
 
     [deliver]                          # record and surface file are always written

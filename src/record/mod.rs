@@ -141,6 +141,12 @@ pub struct Accuracy {
     pub asked: f64,
     /// Largest relative bar of the entries under the demand [1].
     pub reached: f64,
+    /// Relative bar asked of maxima; none where no smooth electrode is under voltage [1].
+    #[serde(default)]
+    pub max_field_asked: Option<f64>,
+    /// Largest relative bar of a maximum of a smooth electrode [1].
+    #[serde(default)]
+    pub max_field_reached: Option<f64>,
 }
 
 /// One run-time check.
@@ -338,7 +344,7 @@ pub struct Maximum {
     pub field_v_per_m: Option<f64>,
     /// Its bar [V/m].
     pub bar_v_per_m: Option<f64>,
-    /// Highest panel value [V/m].
+    /// Highest value of a panel, slivers together with their neighbours [V/m].
     pub raw_v_per_m: f64,
     /// Highest fitted field away from unbounded edges [V/m].
     pub smooth_v_per_m: Option<f64>,
@@ -346,6 +352,15 @@ pub struct Maximum {
     pub at_metre: [f64; 3],
     /// Principal curvatures there [1/m].
     pub curvature_per_metre: Option<[f64; 2]>,
+    /// Area with more than 90 % of it; none where the field is unbounded [m²].
+    #[serde(default)]
+    pub area_above_90_m2: Option<f64>,
+    /// Area with more than 80 % of it; none where the field is unbounded [m²].
+    #[serde(default)]
+    pub area_above_80_m2: Option<f64>,
+    /// The next separate maxima of the electrode, highest first.
+    #[serde(default)]
+    pub further: Vec<FurtherMaximum>,
     /// Limit, as a crest (or steady) value [V/m].
     pub limit_v_per_m: Option<f64>,
     /// `peak`, `rms` or `dc`: how the limit was given.
@@ -354,6 +369,17 @@ pub struct Maximum {
     pub margin: Option<f64>,
     /// `met`, `not_met`, `not_decided` or `no_limit`.
     pub judged: String,
+}
+
+/// A separate maximum that is not the highest of its electrode.
+#[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
+pub struct FurtherMaximum {
+    /// Fitted field [V/m].
+    pub field_v_per_m: f64,
+    /// Its bar [V/m].
+    pub bar_v_per_m: f64,
+    /// Place [m].
+    pub at_metre: [f64; 3],
 }
 
 /// Force on an electrode.

@@ -241,6 +241,8 @@ fn lost_maximum(record: &Record) -> String {
                 ("bar_v_per_m", lost(m.bar_v_per_m)),
                 ("smooth_v_per_m", lost(m.smooth_v_per_m)),
                 ("limit_v_per_m", lost(m.limit_v_per_m)),
+                ("area_above_90_m2", lost(m.area_above_90_m2)),
+                ("area_above_80_m2", lost(m.area_above_80_m2)),
                 ("margin", lost(m.margin)),
             ];
             if let Some((key, _)) = fields.iter().find(|(_, lost)| *lost) {

@@ -118,8 +118,13 @@ pub fn head_text(record: &Record) -> String {
     }
     let (asked, reached) = (record.accuracy.asked, record.accuracy.reached);
     let (asked, reached) = (digits::percent(asked, false), digits::percent(reached, false));
+    let maxima = record.accuracy.max_field_asked.zip(record.accuracy.max_field_reached);
+    let maxima = maxima.map_or_else(String::new, |(asked, reached)| {
+        let (asked, reached) = (digits::percent(asked, false), digits::percent(reached, false));
+        format!("  bar of the maxima on smooth electrodes: asked {asked}, reached {reached}\n")
+    });
     text + &format!(
-        "  bar of the capacitances: asked {asked}, reached {reached}\n  case sha256 {}\n\n",
+        "  bar of the capacitances: asked {asked}, reached {reached}\n{maxima}  case sha256 {}\n\n",
         clean(&record.case.sha256)
     )
 }
@@ -206,10 +211,36 @@ fn maximum_text(m: &Maximum, case: &VoltageCase, printing: &Printing) -> String 
             )
         }
     };
+    if m.field_v_per_m.is_some() {
+        text += &around_text(m, printing);
+    }
+    for further in m.further.iter().take(FURTHER) {
+        let at = format!("{} {}", digits::place(&further.at_metre, printing.length), printing.length_name);
+        text += &format!("      also {} at {at}\n", field(further.field_v_per_m, further.bar_v_per_m));
+    }
     if m.limit_v_per_m.is_some() || m.margin.is_some() || m.judged != "no_limit" {
         text += &limit_text(m, printing);
     }
     text
+}
+
+/// Further maxima of an electrode that are printed; the record holds more.
+const FURTHER: usize = 2;
+
+/// Curvatures and areas about a maximum.
+fn around_text(m: &Maximum, printing: &Printing) -> String {
+    let unit = &printing.length_name;
+    let curved = m.curvature_per_metre.map(|both| {
+        let [most, least] = both.map(|k| digits::significant(k * printing.length, 3));
+        format!("curvatures {most} and {least} per {unit}")
+    });
+    let areas = m.area_above_90_m2.zip(m.area_above_80_m2).map(|(most, more)| {
+        let [most, more] =
+            [most, more].map(|area| digits::significant(area / (printing.length * printing.length), 3));
+        format!("over 90 % of it on {most} {unit}², over 80 % on {more} {unit}²")
+    });
+    let parts: Vec<String> = [curved, areas].into_iter().flatten().collect();
+    if parts.is_empty() { String::new() } else { format!("      {}\n", parts.join("; ")) }
 }
 
 fn limit_text(m: &Maximum, printing: &Printing) -> String {

@@ -41,6 +41,8 @@ pub enum Event {
         reached: f64,
         /// Bar asked [1].
         asked: f64,
+        /// Largest relative bar of the maxima that steer, and the bar asked of them [1].
+        field: Option<(f64, f64)>,
         /// Estimated seconds left, if more rounds follow [s].
         left: Option<f64>,
     },

@@ -90,9 +90,7 @@ fn two_spheres() -> Result<Vec<ProveLine>, StudyError> {
     let source = "image series: Smythe, Static and Dynamic Electricity, ch. 5; Lekner 2011";
     let [own, mutual] = equal_balls(3.0).map(|c| UNIT_BALL * c);
     let sources = Sources::build(&solved.panels);
-    let (bars, _) = solved.bars();
-    let charge_bar = [0, 1].map(|row| bars[row][row].total() / solved.matrix[row][row]);
-    let peaks = field::peaks(&solved, &sources, &[0.5, -0.5], &charge_bar);
+    let peaks = field::peaks(&solved, &sources, &[0.5, -0.5]);
     let (found, bar) = peaks.first().map_or((f64::NAN, 0.0), |peak| (peak.field, peak.bar));
     Ok(vec![
         entry("two spheres, R = 1 m, gap 1 m: C11 [F]", source, &solved, (0, 0), own),
@@ -155,7 +153,7 @@ fn solved(bodies: Vec<Vec<[Vec3; 3]>>, sheet: bool, plane: Option<Plane>) -> Res
     let assembly = assembly::expose(accepted?, &[], plane.as_ref()).map_err(StudyError::Refused)?;
     let start = adapt::start(FIRST_PANELS, None, panel::build(Arc::new(assembly), plane));
     let limits = Limits { max_panels: Some(MOST_PANELS), time: None, memory: f64::INFINITY };
-    let demand = Demand { capacitance: DEMAND };
+    let demand = Demand { capacitance: DEMAND, field: None };
     let finished = adapt::run(start, 1.0, demand, &limits, &|_| {});
     finished.map(|Finished { solved, .. }| solved).map_err(|error| StudyError::Singular(error.to_string()))
 }

@@ -65,7 +65,7 @@ pub(super) fn outcome(
         (0..m.len()).map(|i| (0..m.len()).map(|j| cell(i, j)).collect()).collect()
     };
     let reached = finished.reached;
-    let voltage = voltage::results(case, solved, &sources, states, &bar_matrix).map_err(singular)?;
+    let voltage = voltage::results(case, solved, &sources, states).map_err(singular)?;
     let checks = checks::checks(solved, &bar_matrix, &totals(&earth_bars), &inverse, &voltage.cases);
     let verdict = verdict(case, finished, reached, &voltage.cases, &checks);
     let record = Record {
@@ -89,7 +89,12 @@ pub(super) fn outcome(
         surface_file: FileHash { path: String::new(), sha256: String::new() },
         electrodes: solved.panels.assembly.rows.iter().map(|row| row.name.clone()).collect(),
         rows: rows(case, solved),
-        accuracy: Accuracy { asked: case.accuracy.capacitance, reached },
+        accuracy: Accuracy {
+            asked: case.accuracy.capacitance,
+            reached,
+            max_field_asked: finished.widest.map(|_| case.accuracy.max_field),
+            max_field_reached: finished.widest.map(|widest| widest.bar),
+        },
         earth_share: earth.iter().enumerate().map(|(i, c)| c / solved.matrix[i][i]).collect(),
         mutual_farad: circuit::mutual(&solved.matrix),
         mutual_bar_farad: without_diagonal(&bar_matrix),
@@ -149,15 +154,6 @@ fn findings(case: &Case, solved: &Solved, more: &[Finding]) -> Vec<FindingRecord
     let mut all: Vec<FindingRecord> = solved.panels.assembly.findings.iter().map(stored).collect();
     all.extend(solved_findings(case, solved).iter().map(stored));
     all.extend(more.iter().map(stored));
-    if case.accuracy.max_field.is_some() {
-        all.push(FindingRecord {
-            severity: "note".to_owned(),
-            code: "max_field_not_steered".to_owned(),
-            text: "`max_field` is read but does not steer the refinement yet; each maximum has its own bar"
-                .to_owned(),
-            where_metre: None,
-        });
-    }
     all
 }
 
@@ -323,20 +319,34 @@ fn verdict(
             reasons.push(format!("field limit not decided: {}", undecided.join("; ")));
         }
     }
-    if finished.stop != Stop::Met {
+    let wide = finished.widest.is_some_and(|widest| case.accuracy.max_field < widest.bar);
+    if case.accuracy.capacitance < reached || wide {
         codes.push(3);
         let why = match finished.stop {
             Stop::MaxPanels => "`max_panels` left no room for another round; raise it",
             Stop::Time => "another round would not have fitted into `time_limit`; raise it",
             Stop::Memory => "another round would not have fitted into the memory; raise `memory_limit`",
+            Stop::Stalled => "smaller panels there no longer narrow it; facets drawn finer may",
             Stop::Met | Stop::NothingToCut => "no panel was left to cut",
         };
-        reasons.push(format!(
-            "capacitance: a bar of {:.3} % was asked and {:.3} % reached: {why}; {}",
-            100.0 * case.accuracy.capacitance,
-            100.0 * reached,
-            worst_entry(&finished.solved)
-        ));
+        if case.accuracy.capacitance < reached {
+            reasons.push(format!(
+                "capacitance: a bar of {:.3} % was asked and {:.3} % reached: {why}; {}",
+                100.0 * case.accuracy.capacitance,
+                100.0 * reached,
+                worst_entry(&finished.solved)
+            ));
+        }
+        if let Some(widest) = finished.widest.filter(|widest| case.accuracy.max_field < widest.bar) {
+            let (body, in_case) = (&finished.solved.panels.assembly.bodies[widest.body], &cases[widest.case]);
+            reasons.push(format!(
+                "maximum field: a bar of {:.3} % was asked and {:.3} % reached on {} in {}: {why}",
+                100.0 * case.accuracy.max_field,
+                100.0 * widest.bar,
+                body.name,
+                in_case.name
+            ));
+        }
     }
     let certain = codes.contains(&5) || codes.contains(&3) || !over.is_empty();
     let word = if codes.is_empty() {

@@ -6,7 +6,9 @@ use super::StudyError;
 use super::bodies;
 use super::record;
 use super::state;
+use super::state::States;
 use crate::adapt;
+use crate::adapt::Aim;
 use crate::adapt::Demand;
 use crate::adapt::Finished;
 use crate::adapt::Limits;
@@ -15,10 +17,12 @@ use crate::base::threads;
 use crate::case::Case;
 use crate::case::Shapes;
 use crate::case::machine;
+use crate::circuit;
 use crate::mesh::Assembly;
 use crate::mesh::assembly;
 use crate::operator::dense;
 use crate::panel;
+use crate::physics::capacitance::Matrix;
 use std::collections::BTreeMap;
 use std::sync::Arc;
 use std::time::Instant;
@@ -55,7 +59,7 @@ fn run_here(case: &Case, shapes: &Shapes, progress: &(dyn Fn(&Event) + Sync)) ->
     let states = state::states(case, &assembly).map_err(StudyError::Refused)?;
     lap(&mut seconds, "inspect");
     progress(&Event::Phase("refine"));
-    let finished = refine(case, assembly, progress)?;
+    let finished = refine(case, assembly, &states, progress)?;
     lap(&mut seconds, "refine");
     progress(&Event::Phase("results"));
     let outcome = record::outcome(case, shapes, &finished, &states)?;
@@ -102,6 +106,7 @@ pub(super) fn memory_limit(case: &Case) -> f64 {
 fn refine(
     case: &Case,
     assembly: Arc<Assembly>,
+    states: &[States],
     progress: &(dyn Fn(&Event) + Sync),
 ) -> Result<Finished, StudyError> {
     let plane = case.earth_plane.as_ref().map(|earth| earth.plane);
@@ -126,10 +131,18 @@ fn refine(
             panels: round.panels,
             reached: round.reached,
             asked,
+            field: round.field.map(|reached| (reached, case.accuracy.max_field)),
             left: round.next,
         });
     };
-    let demand = Demand { capacitance: asked };
+    // A matrix that settles no state is told with the results; until then there is no maximum to aim at.
+    let settled = |matrix: &Matrix| -> Vec<Vec<f64>> {
+        let settle = |states: &States| circuit::settle(matrix, &states.rows, &states.groups);
+        let all: Result<Vec<_>, _> = states.iter().map(settle).collect();
+        all.map_or_else(|_| Vec::new(), |all| all.into_iter().map(|s| s.potentials).collect())
+    };
+    let aim = Aim { max_field: case.accuracy.max_field, potentials: &settled };
+    let demand = Demand { capacitance: asked, field: (!states.is_empty()).then_some(aim) };
     adapt::run(start, case.relative_permittivity, demand, &limits, &tell)
         .map_err(|error| StudyError::Singular(error.to_string()))
 }

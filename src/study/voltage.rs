@@ -17,8 +17,10 @@ use crate::physics::field;
 use crate::physics::field::Peak;
 use crate::physics::look;
 use crate::physics::solved::Solved;
+use crate::physics::solved::unit_weight;
 use crate::record::Corner;
 use crate::record::Edge;
+use crate::record::FurtherMaximum;
 use crate::record::Look;
 use crate::record::Maximum;
 use crate::record::VoltageCase;
@@ -45,7 +47,6 @@ pub(super) fn results(
     solved: &Solved,
     sources: &Sources,
     states: &[States],
-    bars: &[Vec<f64>],
 ) -> Result<Voltage, CircuitError> {
     let map = look::Map::new(&solved.panels);
     let media = |points: &[crate::base::Vec3]| -> Vec<String> {
@@ -64,12 +65,17 @@ pub(super) fn results(
         .collect();
     let (mut cases, mut potentials) = (Vec::new(), Vec::new());
     let (mut edges, mut corners, mut findings) = (Vec::new(), Vec::new(), Vec::<Finding>::new());
-    let charge_bars: Vec<f64> =
-        (0..solved.n_rows()).map(|i| bars[i][i] / solved.matrix[i][i].abs()).collect();
+    let n = solved.n_rows();
+    let relative = |i: usize| {
+        let u = unit_weight(i, n);
+        solved.bar(&u, &u).total() / solved.matrix[i][i].abs()
+    };
+    let charge_bars: Vec<f64> = (0..n).map(relative).collect();
     let sharp = Edges::find(case, solved, sources, &charge_bars);
+    let survey = field::survey(&solved.panels);
     for (voltages, states) in case.voltage_cases.iter().zip(states) {
         let settled = circuit::settle(&solved.matrix, &states.rows, &states.groups)?;
-        let peaks = field::peaks(solved, sources, &settled.potentials, &charge_bars);
+        let peaks = field::surveyed_peaks(&survey, solved, sources, &settled.potentials);
         let found = sharp.at(&voltages.name, &settled.potentials);
         let one_of = |peak: &Peak| maximum(&case.electrodes[peak.body], peak, found.tops[peak.body]);
         let maxima = peaks.iter().map(one_of).collect();
@@ -172,10 +178,21 @@ fn maximum(electrode: &Electrode, peak: &Peak, top: Top) -> Maximum {
         smooth_v_per_m: rounded.is_none().then_some(peak.field),
         at_metre: [at.x, at.y, at.z],
         curvature_per_metre: if rounded.is_some() { None } else { peak.curvature },
+        area_above_90_m2: peak.area_above.map(|[most, _]| most),
+        area_above_80_m2: peak.area_above.map(|[_, more]| more),
+        further: peak.further.iter().map(further).collect(),
         limit_v_per_m: limit.map(|(limit, _)| limit),
         limit_is: limit.map(|(_, is)| word(is).to_owned()),
         // A field under its bar leaves no margin that means anything.
         margin: limit.filter(|_| bounded && bar < field).map(|(limit, _)| limit / field - 1.0),
         judged: judged.to_owned(),
+    }
+}
+
+fn further(further: &field::Further) -> FurtherMaximum {
+    FurtherMaximum {
+        field_v_per_m: further.field,
+        bar_v_per_m: further.bar,
+        at_metre: [further.at.x, further.at.y, further.at.z],
     }
 }

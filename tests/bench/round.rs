@@ -47,7 +47,7 @@ fn three_cubes(most: usize) -> Panels {
     let assembly = Assembly { rows, pieces, findings: Vec::new(), bodies };
     let start = adapt::start(60, None, panel::build(Arc::new(assembly), None));
     let limits = adapt::Limits { max_panels: Some(most), time: None, memory: 1e11 };
-    let finished = adapt::run(start, 1.0, adapt::Demand { capacitance: 1e-9 }, &limits, &|_| ());
+    let finished = adapt::run(start, 1.0, adapt::Demand { capacitance: 1e-9, field: None }, &limits, &|_| ());
     finished.expect("three cubes can be solved").solved.panels
 }
 

@@ -92,7 +92,7 @@ fn outcome(solved: &Solved, row: &Row, case: &TestCase) -> Outcome {
             (0.5 * value, Some(0.5 * bar))
         }
         Wanted::SurfaceField { body, place } => {
-            let peaks = field::peaks(solved, &sources(), &case.potentials, &solving::charge_bars(solved));
+            let peaks = field::peaks(solved, &sources(), &case.potentials);
             off = off_place(row, &peaks[body].at, &place);
             (peaks[body].field, Some(peaks[body].bar))
         }

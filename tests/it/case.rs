@@ -115,7 +115,7 @@ fn the_three_ball_layout_is_read_to_si() {
     assert_eq!(case.looks[0].points.len(), 51);
     assert!((case.looks[0].points[50] - Vec3::new(0.0, 0.0, 0.35)).norm() < 1e-15);
     assert_eq!(case.accuracy.capacitance, 0.005);
-    assert_eq!(case.accuracy.max_field, Some(0.02));
+    assert_eq!(case.accuracy.max_field, 0.02);
     assert_eq!(case.accuracy.time_limit, Some(600.0));
     assert_eq!(case.deliver.record, Path::new("demo/out/three_ball_stack/record.json"));
     assert_eq!(case.deliver.surface, Path::new("demo/out/three_ball_stack/surface.vtu"));

@@ -38,7 +38,12 @@ pub(crate) fn record() -> Record {
         rows: [("ball", "live"), ("tap", "floating"), ("foot", "earthed")]
             .map(|(name, role)| RowInfo { members: vec![name.into()], role: role.into() })
             .to_vec(),
-        accuracy: Accuracy { asked: 5e-3, reached: 3.1e-3 },
+        accuracy: Accuracy {
+            asked: 5e-3,
+            reached: 3.1e-3,
+            max_field_asked: Some(0.02),
+            max_field_reached: Some(0.009),
+        },
         earth_share: earth.iter().zip(&c).enumerate().map(|(i, (e, row))| e / row[i]).collect(),
         mutual_farad: circuit::mutual(&c),
         mutual_bar_farad: flat(2.1e-15),
@@ -191,6 +196,9 @@ fn maximum(name: &str, field: Option<f64>, at_metre: [f64; 3]) -> Maximum {
         smooth_v_per_m: field.or(Some(0.6794162e6)),
         at_metre,
         curvature_per_metre: Some([20.0, 20.0]),
+        area_above_90_m2: field.map(|_| 2.1e-4),
+        area_above_80_m2: field.map(|_| 5.3e-4),
+        further: field.map(|e| lesser(0.62 * e)).into_iter().collect(),
         limit_v_per_m: limited.then_some(2.6e6),
         limit_is: limited.then(|| "peak".into()),
         margin: field.filter(|_| limited).map(|e| 2.6e6 / e - 1.0),
@@ -203,6 +211,10 @@ fn maximum(name: &str, field: Option<f64>, at_metre: [f64; 3]) -> Maximum {
         }
         .into(),
     }
+}
+
+fn lesser(field_v_per_m: f64) -> FurtherMaximum {
+    FurtherMaximum { field_v_per_m, bar_v_per_m: 0.02 * field_v_per_m, at_metre: [0.0, 0.0, 0.45] }
 }
 
 fn budget_line() -> BudgetLine {

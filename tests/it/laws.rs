@@ -75,14 +75,7 @@ fn lengths_times_a_power_of_two_scale_capacitance_and_field_to_the_last_digits()
     let small = solving::solve(&mapped(&bodies, |f| shapes::scaled(f, s)), floor(-s), asked);
     assert_eq!(one.panels.len(), small.panels.len());
     assert_same_matrix(&small.matrix, |i, j| s * one.matrix[i][j], 1e-14);
-    let peaks = |solved: &Solved| {
-        field::peaks(
-            solved,
-            &Sources::build(&solved.panels),
-            &[1.0, 0.0, -0.5],
-            &solving::charge_bars(solved),
-        )
-    };
+    let peaks = |solved: &Solved| field::peaks(solved, &Sources::build(&solved.panels), &[1.0, 0.0, -0.5]);
     for (small, one) in peaks(&small).iter().zip(&peaks(&one)) {
         assert_close(small.field * s, one.field, 1e-12 * one.field);
         assert_close(small.bar * s, one.bar, 1e-9 * one.field);
@@ -124,9 +117,7 @@ fn an_earth_plane_is_a_mirror_body_at_the_opposite_voltage() {
     let pair = solving::solve(&solving::solids([ball.clone(), shapes::mirrored(&ball)]), None, ONE_ROUND);
     let (c, p) = (over.matrix[0][0], &pair.matrix);
     assert_close(c, p[0][0] - p[0][1], 1e-6 * c);
-    let peak = |solved: &Solved, v: &[f64]| {
-        field::peaks(solved, &Sources::build(&solved.panels), v, &solving::charge_bars(solved))[0].field
-    };
+    let peak = |solved: &Solved, v: &[f64]| field::peaks(solved, &Sources::build(&solved.panels), v)[0].field;
     let field = peak(&over, &[1.0]);
     assert_close(field, peak(&pair, &[1.0, -1.0]), 1e-6 * field);
 }

@@ -17,6 +17,7 @@ mod golden;
 mod kernels;
 mod laws;
 mod map;
+mod maxima;
 mod outputs;
 mod rates;
 mod reference;

@@ -2,6 +2,7 @@
 use crate::reference::TestBody;
 use crate::shapes::Facet;
 use amberskin::adapt;
+use amberskin::adapt::Aim;
 use amberskin::adapt::Demand;
 use amberskin::adapt::Finished;
 use amberskin::adapt::Limits;
@@ -12,6 +13,7 @@ use amberskin::mesh::accept;
 use amberskin::mesh::assembly;
 use amberskin::mesh::smooth;
 use amberskin::panel;
+use amberskin::physics::capacitance::Matrix;
 use amberskin::physics::solved::Bar;
 use amberskin::physics::solved::Solved;
 use std::sync::Arc;
@@ -61,7 +63,17 @@ pub(crate) struct Asked {
 pub(crate) fn refined(assembly: Assembly, plane: Option<Plane>, asked: Asked) -> Finished {
     let start = adapt::start(FIRST_PANELS, None, panel::build(Arc::new(assembly), plane));
     let limits = Limits { max_panels: Some(asked.max_panels), time: None, memory: 4e9 };
-    adapt::run(start, 1.0, Demand { capacitance: asked.demand }, &limits, &|_| {}).unwrap()
+    adapt::run(start, 1.0, Demand { capacitance: asked.demand, field: None }, &limits, &|_| {}).unwrap()
+}
+
+/// Refined for capacitances of 0.5 % and for the maxima at row potentials `v`.
+pub(crate) fn aimed(bodies: &[TestBody], plane: Option<Plane>, v: &[f64], max_field: f64) -> Finished {
+    let assembly = assembled(bodies, &[], plane.as_ref());
+    let start = adapt::start(FIRST_PANELS, None, panel::build(Arc::new(assembly), plane));
+    let limits = Limits { max_panels: Some(6000), time: None, memory: 4e9 };
+    let potentials = |_: &Matrix| vec![v.to_vec()];
+    let aim = Aim { max_field, potentials: &potentials };
+    adapt::run(start, 1.0, Demand { capacitance: 5e-3, field: Some(aim) }, &limits, &|_| {}).unwrap()
 }
 
 /// Bodies without bonds, refined until what is asked is reached.
@@ -74,10 +86,4 @@ pub(crate) fn combination(solved: &Solved, u: &[f64], v: &[f64]) -> (f64, f64) {
     let c = &solved.matrix;
     let value = u.iter().zip(c).map(|(u, row)| u * row.iter().zip(v).map(|(c, v)| c * v).sum::<f64>()).sum();
     (value, Bar::total(&solved.bar(u, v)))
-}
-
-/// Relative bars of the diagonal, for the bars of maxima [1].
-pub(crate) fn charge_bars(solved: &Solved) -> Vec<f64> {
-    let (bars, _) = solved.bars();
-    (0..solved.n_rows()).map(|i| bars[i][i].total() / solved.matrix[i][i]).collect()
 }
