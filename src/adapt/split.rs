@@ -21,7 +21,7 @@ pub fn bisect(panels: &Panels, cuts: &[(usize, usize)]) -> Panels {
             None => origins.push(origin),
         }
     }
-    panel::from_origins(panels.assembly.clone(), panels.plane, &origins)
+    panel::from_origins(panels.assembly.clone(), panels.images.clone(), &origins)
 }
 
 fn halves(origin: &Origin, edge: usize) -> [Origin; 2] {

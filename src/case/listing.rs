@@ -26,9 +26,15 @@ pub fn resolved(case: &Case) -> Vec<(String, String)> {
     put("units.capacitance".to_owned(), case.printing.capacitance_name.clone());
     put("units.field".to_owned(), case.printing.field_name.clone());
     put("surroundings.relative_permittivity".to_owned(), case.relative_permittivity.to_string());
-    if let Some(earth) = &case.earth_plane {
+    for earth in &case.earth_planes {
         put(format!("earth_plane.{}.through", earth.name), metres(&earth.plane.through));
         put(format!("earth_plane.{}.facing", earth.name), numbers(&earth.plane.facing));
+    }
+    for mirror in &case.mirrors {
+        put(format!("mirror.{}.through", mirror.name), metres(&mirror.plane.through));
+        put(format!("mirror.{}.facing", mirror.name), numbers(&mirror.plane.facing));
+        let parity = if mirror.even { "even" } else { "odd" };
+        put(format!("mirror.{}.parity", mirror.name), parity.to_owned());
     }
     for electrode in &case.electrodes {
         put_electrode(case, electrode, &mut put);

@@ -11,6 +11,7 @@ mod load;
 pub mod machine;
 mod resolve;
 mod resolve_electrode;
+mod resolve_plane;
 mod resolve_value;
 mod resolve_voltage;
 mod wire;
@@ -25,6 +26,7 @@ pub use load::load;
 pub use load::parse;
 pub use load::read_shapes;
 
+use crate::base::Images;
 use crate::base::Plane;
 use crate::base::Vec3;
 use std::path::PathBuf;
@@ -46,8 +48,12 @@ pub struct Case {
     pub printing: Printing,
     /// Relative permittivity of the surroundings [1].
     pub relative_permittivity: f64,
-    /// The earth plane.
-    pub earth_plane: Option<EarthPlane>,
+    /// Earth planes in file order.
+    pub earth_planes: Vec<EarthPlane>,
+    /// Mirrors in file order.
+    pub mirrors: Vec<Mirror>,
+    /// Earth planes and mirrors together, earth planes first.
+    pub images: Images,
     /// Electrodes in file order.
     pub electrodes: Vec<Electrode>,
     /// Bonds: names of electrodes, possibly with `earth`.
@@ -95,6 +101,17 @@ pub struct EarthPlane {
     pub name: String,
     /// The plane [m].
     pub plane: Plane,
+}
+
+/// `[[mirror]]`.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Mirror {
+    /// Name.
+    pub name: String,
+    /// The plane [m].
+    pub plane: Plane,
+    /// Whether the copies are at the same potential (even) or at the opposite one (odd).
+    pub even: bool,
 }
 
 /// State of an electrode in a voltage case unless the case says otherwise.

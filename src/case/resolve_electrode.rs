@@ -1,10 +1,8 @@
-//! Electrodes, bonds and the earth plane: names, states and places.
+//! Electrodes and bonds: names, states and places.
 
-use crate::base::Plane;
 use crate::base::Vec3;
 use crate::base::units;
 use crate::base::units::Dimension;
-use crate::case::EarthPlane;
 use crate::case::Electrode;
 use crate::case::Place;
 use crate::case::Role;
@@ -341,27 +339,4 @@ fn bond(wire: &Spanned<wire::Bond>, electrodes: &[Electrode], sink: &mut Sink) -
         sink.note(at.span(), Fault::BondName { name: joined });
     }
     names
-}
-
-/// The earth plane; a second one is a fault.
-pub(super) fn earth_plane(
-    wires: &[Spanned<wire::EarthPlane>],
-    unit: f64,
-    sink: &mut Sink,
-) -> Option<EarthPlane> {
-    for second in wires.iter().skip(1) {
-        sink.note(second.span(), Fault::SecondPlane);
-    }
-    let wire = wires.first()?;
-    let (span, wire) = (wire.span(), wire.get_ref());
-    let here = ("the [[earth_plane]]", span);
-    value::needed(&wire.through, "through", "a point of the plane, [x, y, z]", here.clone(), sink);
-    value::needed(&wire.facing, "facing", "the direction from the plane to the electrodes", here, sink);
-    if wire.name.is_none() {
-        sink.assume("earth_plane.name", "plane");
-    }
-    let through = value::vector(&wire.through, "through", unit, sink).unwrap_or_else(Vec3::zeros);
-    let facing = value::direction(&wire.facing, "facing", sink).unwrap_or_else(Vec3::z);
-    let name = value::text(&wire.name, "name", sink).unwrap_or_else(|| "plane".to_owned());
-    Some(EarthPlane { name, plane: Plane { through, facing } })
 }

@@ -46,6 +46,8 @@ pub(super) struct File {
     #[serde(default)]
     pub(super) earth_plane: Vec<Spanned<EarthPlane>>,
     #[serde(default)]
+    pub(super) mirror: Vec<Spanned<Mirror>>,
+    #[serde(default)]
     pub(super) voltage_case: Vec<Spanned<VoltageCase>>,
     #[serde(default)]
     pub(super) look: Vec<Spanned<Look>>,
@@ -130,6 +132,15 @@ pub(super) struct EarthPlane {
     pub(super) name: Field,
     pub(super) through: Field,
     pub(super) facing: Field,
+}
+
+#[derive(Debug, Deserialize)]
+#[serde(deny_unknown_fields)]
+pub(super) struct Mirror {
+    pub(super) name: Field,
+    pub(super) through: Field,
+    pub(super) facing: Field,
+    pub(super) parity: Field,
 }
 
 #[derive(Debug, Deserialize)]
@@ -339,6 +350,7 @@ mod tests {
         agree::<Rotate>(&words::ROTATE);
         agree::<Bond>(&words::BOND);
         agree::<EarthPlane>(&words::EARTH_PLANE);
+        agree::<Mirror>(&words::MIRROR);
         agree::<VoltageCase>(&words::VOLTAGE_CASE);
         agree::<Look>(&words::LOOK);
         agree::<Line>(&words::LINE);

@@ -41,6 +41,7 @@ pub(super) static FILE: Words = Words {
         ("electrode", Holds::Tables(&ELECTRODE)),
         ("bond", Holds::Tables(&BOND)),
         ("earth_plane", Holds::Tables(&EARTH_PLANE)),
+        ("mirror", Holds::Tables(&MIRROR)),
         ("voltage_case", Holds::Tables(&VOLTAGE_CASE)),
         ("look", Holds::Tables(&LOOK)),
         ("accuracy", Holds::Table(&ACCURACY)),
@@ -49,7 +50,6 @@ pub(super) static FILE: Words = Words {
     planned: &[
         "wire",
         "copies",
-        "mirror",
         "dielectric",
         "node",
         "fitted_capacitor",
@@ -125,6 +125,17 @@ pub(super) static BOND: Words =
 pub(super) static EARTH_PLANE: Words = Words {
     table: "[[earth_plane]]",
     known: &[("name", Holds::Value), ("through", Holds::Value), ("facing", Holds::Value)],
+    planned: &[],
+};
+
+pub(super) static MIRROR: Words = Words {
+    table: "[[mirror]]",
+    known: &[
+        ("name", Holds::Value),
+        ("through", Holds::Value),
+        ("facing", Holds::Value),
+        ("parity", Holds::Value),
+    ],
     planned: &[],
 };
 

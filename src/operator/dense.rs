@@ -34,7 +34,7 @@ pub fn assemble(panels: &Panels, sources: &Sources) -> Dense {
     // All first test points, then all second ones, then all third: the mean is over three runs.
     let at = |w: [f64; 3]| panels.triangles.iter().map(move |tri| tri.at(w));
     let points: Vec<Vec3> = rules::TEST_POINTS.iter().flat_map(|w| at(*w)).collect();
-    let targets = Targets::new(&points, sources.plane());
+    let targets = Targets::new(&points, sources.reflections());
     let mut columns = vec![0.0; n * n];
     threads::for_each_chunk(&mut columns, n.max(1), |j, column| {
         let (mut seen, mut scratch) = (vec![0.0; targets.padded()], vec![0.0; targets.padded()]);

@@ -6,7 +6,7 @@
 
 mod place;
 
-use crate::base::Plane;
+use crate::base::Images;
 use crate::geom::Triangle;
 use crate::mesh::Assembly;
 use crate::mesh::Chart;
@@ -32,8 +32,8 @@ pub struct Panels {
     pub bary: Vec<[[f64; 3]; 3]>,
     /// Rows of the matrix.
     pub n_rows: usize,
-    /// The plane at 0 V, if any.
-    pub plane: Option<Plane>,
+    /// Earth planes and mirrors.
+    pub images: Images,
     /// What was drawn.
     pub assembly: Arc<Assembly>,
 }
@@ -77,17 +77,17 @@ pub struct Origin {
 }
 
 /// One panel for each exposed piece.
-pub fn build(assembly: Arc<Assembly>, plane: Option<Plane>) -> Panels {
+pub fn build(assembly: Arc<Assembly>, images: impl Into<Images>) -> Panels {
     let origin =
         |piece: &Piece| Origin { net: piece.net, body: piece.body, facet: piece.facet, bary: piece.bary };
     let origins: Vec<Origin> = assembly.pieces.iter().map(origin).collect();
-    from_origins(assembly, plane, &origins)
+    from_origins(assembly, images.into(), &origins)
 }
 
 /// Panels in the order of their origins, each put at the mean height of the rebuilt surface.
-pub fn from_origins(assembly: Arc<Assembly>, plane: Option<Plane>, origins: &[Origin]) -> Panels {
+pub fn from_origins(assembly: Arc<Assembly>, images: Images, origins: &[Origin]) -> Panels {
     let placed: Vec<(Triangle, f64)> =
-        origins.iter().map(|origin| place::place(&assembly, plane.as_ref(), origin)).collect();
+        origins.iter().map(|origin| place::place(&assembly, &images, origin)).collect();
     Panels {
         triangles: placed.iter().map(|(tri, _)| *tri).collect(),
         offset: placed.iter().map(|(_, offset)| *offset).collect(),
@@ -96,7 +96,7 @@ pub fn from_origins(assembly: Arc<Assembly>, plane: Option<Plane>, origins: &[Or
         facet: origins.iter().map(|origin| origin.facet).collect(),
         bary: origins.iter().map(|origin| origin.bary).collect(),
         n_rows: assembly.rows.len(),
-        plane,
+        images,
         assembly,
     }
 }

@@ -1,6 +1,7 @@
 //! From the drawn facet to the panel: the mean height of the rebuilt surface (DESIGN 3.6).
 
 use super::Origin;
+use crate::base::Images;
 use crate::base::Plane;
 use crate::base::Vec3;
 use crate::geom::Triangle;
@@ -14,7 +15,7 @@ use crate::mesh::Assembly;
 /// moved along the recovered normals, so that it widens on a bulge as the surface does and panels of
 /// one height close.  Sphere of 320, 1,280, 2,420 regular facets, error of the capacitance: as drawn
 /// −1.1e-2, −2.9e-3, −1.5e-3, placed so: see `tests/it/accuracy.rs`.
-pub(super) fn place(assembly: &Assembly, plane: Option<&Plane>, origin: &Origin) -> (Triangle, f64) {
+pub(super) fn place(assembly: &Assembly, images: &Images, origin: &Origin) -> (Triangle, f64) {
     let surface = &assembly.bodies[origin.body as usize].surface;
     let facet = origin.facet as usize;
     let corners = surface.welded.facets[facet].map(|k| surface.welded.points[k as usize]);
@@ -32,12 +33,26 @@ pub(super) fn place(assembly: &Assembly, plane: Option<&Plane>, origin: &Origin)
         point + if 0.5 < along { normal * (offset / along) } else { n * offset }
     };
     let placed = origin.bary.map(at);
-    // A bulge through the earth plane is no bulge: the facets are too coarse for the gap there.
-    if plane.is_some_and(|plane| 0.0 < offset && placed.iter().any(|x| plane.height(x) <= 0.0)) {
+    // A bulge through a plane is no bulge: the facets are too coarse for the gap there.
+    if 0.0 < offset && crosses(images, &origin.bary.map(|w| flat.at(w)), &placed) {
         return (Triangle::new(origin.bary.map(|w| flat.at(w))), 0.0);
     }
     (Triangle::new(placed), offset)
 }
+
+/// Whether corners come to lie at or behind a plane at 0 V, or behind an even mirror from the front of it:
+/// where a body meets an even mirror its corners stay in the plane up to rounding.
+fn crosses(images: &Images, flat: &[Vec3; 3], placed: &[Vec3; 3]) -> bool {
+    let size = (flat[1] - flat[0]).norm().max((flat[2] - flat[0]).norm());
+    let through = |plane: &Plane, least: f64| {
+        (0..3).any(|k| least * size < plane.height(&flat[k]) && plane.height(&placed[k]) <= 0.0)
+    };
+    images.grounded().any(|grounded| through(&grounded.plane, f64::NEG_INFINITY))
+        || images.even().any(|plane| through(plane, IN_PLANE))
+}
+
+/// Height of a corner over an even mirror up to which it lies in it, in sizes of the panel [1].
+const IN_PLANE: f64 = 1e-9;
 
 fn mean_height(corners: &[Vec3; 3], normals: &[Vec3; 3], n: &Vec3, bary: &[[f64; 3]; 3]) -> f64 {
     // Heights of the control points b210 … over the plane; those of the corners are zero.

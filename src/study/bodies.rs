@@ -20,6 +20,7 @@ use crate::mesh::smooth;
 use crate::mesh::smooth::Smooth;
 use crate::mesh::stl;
 use crate::mesh::weld;
+use crate::mesh::whole;
 
 /// Facets of one file, solid by solid, in the unit of the file.
 pub(super) struct Read {
@@ -95,6 +96,11 @@ fn body(case: &Case, electrode: &Electrode, read: &[Read]) -> Result<(Body, Vec<
             return Err(findings);
         }
     }
+    let (surface, more) = whole::whole(surface, &case.images, &electrode.name).map_err(|more| {
+        findings.extend(more);
+        std::mem::take(&mut findings)
+    })?;
+    findings.extend(more);
     let surface = smoothed(surface, electrode, &mut findings);
     Ok((Body { name: electrode.name.clone(), surface }, findings))
 }

@@ -41,9 +41,8 @@ pub fn inspect_case(case: &Case, shapes: &Shapes) -> Result<Inspection, StudyErr
     };
     let lines = bodies.iter().map(line).collect();
     let repaired = bodies.iter().map(|body| (body.name.clone(), in_units(body, case.length_unit))).collect();
-    let plane = case.earth_plane.as_ref().map(|earth| earth.plane);
     let mut effort = None;
-    match assembly::expose(bodies, &case.bonds, plane.as_ref()) {
+    match assembly::expose(bodies, &case.bonds, &case.images) {
         Ok(exposed) => {
             let pieces = exposed.pieces.len();
             let least = exposed.bodies.len() * EDGED_BODY;

@@ -394,6 +394,9 @@ pub(super) fn medium_name(medium: look::Medium, solved: &Solved) -> String {
     match medium {
         look::Medium::Surroundings => "surroundings".to_owned(),
         look::Medium::BehindEarth => "behind earth".to_owned(),
+        look::Medium::Opposite(body) => {
+            format!("opposite copy of {}", solved.panels.assembly.bodies[body].name)
+        }
         look::Medium::Metal(body) => solved.panels.assembly.bodies[body].name.clone(),
     }
 }

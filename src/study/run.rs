@@ -74,8 +74,7 @@ fn with_seconds(mut outcome: Outcome, seconds: Seconds) -> Outcome {
 /// [`StudyError::Refused`] with all findings.
 pub(super) fn assemble(case: &Case, shapes: &Shapes) -> Result<Assembly, StudyError> {
     let (bodies, mut findings) = bodies::bodies(case, shapes).map_err(StudyError::Refused)?;
-    let plane = case.earth_plane.as_ref().map(|earth| earth.plane);
-    match assembly::expose(bodies, &case.bonds, plane.as_ref()) {
+    match assembly::expose(bodies, &case.bonds, &case.images) {
         Ok(assembly) => {
             findings.extend(assembly.findings);
             if assembly.rows.is_empty() {
@@ -104,8 +103,7 @@ fn refine(
     assembly: Arc<Assembly>,
     progress: &(dyn Fn(&Event) + Sync),
 ) -> Result<Finished, StudyError> {
-    let plane = case.earth_plane.as_ref().map(|earth| earth.plane);
-    let start = adapt::at_least(FIRST_PANELS, panel::build(assembly, plane));
+    let start = adapt::at_least(FIRST_PANELS, panel::build(assembly, &case.images));
     let limits = Limits {
         max_panels: case.accuracy.max_panels,
         time: case.accuracy.time_limit,

@@ -103,7 +103,7 @@ fn the_three_ball_layout_is_read_to_si() {
     let case = parsed(THREE_BALLS);
     assert_eq!(case.length_unit, 1e-3);
     assert_eq!(case.relative_permittivity, 1.0);
-    assert_eq!(case.earth_plane.as_ref().unwrap().plane.facing, Vec3::z());
+    assert_eq!(case.earth_planes[0].plane.facing, Vec3::z());
     let names: Vec<&str> = case.electrodes.iter().map(|e| e.name.as_str()).collect();
     assert_eq!(names, ["ball", "tap", "foot"]);
     assert_eq!(case.shape_paths, ["../meshes/ball.stl", "../meshes/tap.stl", "../meshes/foot.stl"]);

@@ -15,6 +15,7 @@ mod golden;
 mod kernels;
 mod laws;
 mod map;
+mod mirrors;
 mod outputs;
 mod rates;
 mod reference;

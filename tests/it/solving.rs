@@ -5,13 +5,14 @@ use amberskin::adapt;
 use amberskin::adapt::Demand;
 use amberskin::adapt::Finished;
 use amberskin::adapt::Limits;
-use amberskin::base::Plane;
+use amberskin::base::Images;
 use amberskin::mesh::Assembly;
 use amberskin::mesh::Body;
 use amberskin::mesh::Surface;
 use amberskin::mesh::accept;
 use amberskin::mesh::assembly;
 use amberskin::mesh::smooth;
+use amberskin::mesh::whole;
 use amberskin::panel;
 use amberskin::physics::solved::Bar;
 use amberskin::physics::solved::Solved;
@@ -40,15 +41,17 @@ fn named(facets: impl IntoIterator<Item = Vec<Facet>>, sheet: bool) -> Vec<TestB
 }
 
 /// Accepted, smoothed and exposed.
-pub(crate) fn assembled(bodies: &[TestBody], bonds: &[Vec<String>], plane: Option<&Plane>) -> Assembly {
+pub(crate) fn assembled(bodies: &[TestBody], bonds: &[Vec<String>], images: impl Into<Images>) -> Assembly {
+    let images = images.into();
     let accepted = |body: &TestBody| {
         let (surface, _) = accept::body(&body.facets, body.sheet, &body.name).unwrap();
+        let (surface, _) = whole::whole(surface, &images, &body.name).unwrap();
         let smooth = smooth::recover(&surface.welded, smooth::CREASE_ANGLE);
         let surface =
             Surface { normals: smooth.normals, creases: smooth.creases, rims_as_drawn: false, ..surface };
         Body { name: body.name.clone(), surface }
     };
-    assembly::expose(bodies.iter().map(accepted).collect(), bonds, plane).unwrap()
+    assembly::expose(bodies.iter().map(accepted).collect(), bonds, images).unwrap()
 }
 
 /// What is asked of a solution.
@@ -61,15 +64,16 @@ pub(crate) struct Asked {
 }
 
 /// Refined until what is asked is reached.
-pub(crate) fn refined(assembly: Assembly, plane: Option<Plane>, asked: Asked) -> Finished {
-    let start = adapt::at_least(FIRST_PANELS, panel::build(Arc::new(assembly), plane));
+pub(crate) fn refined(assembly: Assembly, images: impl Into<Images>, asked: Asked) -> Finished {
+    let start = adapt::at_least(FIRST_PANELS, panel::build(Arc::new(assembly), images));
     let limits = Limits { max_panels: Some(asked.max_panels), time: None, memory: 4e9 };
     adapt::run(start, 1.0, Demand { capacitance: asked.demand }, &limits, &|_| {}).unwrap()
 }
 
 /// Bodies without bonds, refined until what is asked is reached.
-pub(crate) fn solve(bodies: &[TestBody], plane: Option<Plane>, asked: Asked) -> Solved {
-    refined(assembled(bodies, &[], plane.as_ref()), plane, asked).solved
+pub(crate) fn solve(bodies: &[TestBody], images: impl Into<Images>, asked: Asked) -> Solved {
+    let images = images.into();
+    refined(assembled(bodies, &[], &images), images, asked).solved
 }
 
 /// `uᵀ C v` and its bar [F × units of u and v].
