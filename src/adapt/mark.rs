@@ -61,9 +61,9 @@ pub fn reached(matrix: &[Vec<f64>], bars: &(Vec<Vec<Bar>>, Vec<Bar>)) -> f64 {
 }
 
 /// Cuts for the next round: the panels that carry [`BULK`] of the indicators, at most `room` of them,
-/// each along its steepest edge.
+/// each along its steepest edge.  In a ring a panel stands for its copies in all sectors.
 pub(super) fn cuts(solved: &Solved, room: usize) -> Vec<(usize, usize)> {
-    let indicators = indicators(solved);
+    let (indicators, room) = (indicators(solved), room / solved.panels.copies());
     let mut order: Vec<usize> = (0..indicators.len()).collect();
     order.sort_by(|a, b| indicators[*b].total_cmp(&indicators[*a]).then(a.cmp(b)));
     let total: f64 = indicators.iter().sum();
@@ -80,15 +80,16 @@ pub(super) fn cuts(solved: &Solved, room: usize) -> Vec<(usize, usize)> {
     marked.sort_unstable();
     let weight: Vec<f64> = (0..solved.n_rows()).map(|i| 1.0 / solved.matrix[i][i].abs().sqrt()).collect();
     let edge = |p: usize| Estimate::steepest_edge(&solved.panels, &solved.residuals, &weight, p);
-    marked.into_iter().map(|p| (p, edge(p))).collect()
+    let cuts: Vec<(usize, usize)> = marked.into_iter().map(|p| (p, edge(p))).collect();
+    solved.panels.in_all_sectors(&cuts)
 }
 
-/// Share of every panel in the bars, each relative to what is allowed [1].
+/// Share of every distinct panel in the bars, each relative to what is allowed [1].
 fn indicators(solved: &Solved) -> Vec<f64> {
     let n = solved.n_rows();
     let ones = vec![1.0; n];
     let weights: Vec<Vec<f64>> = (0..n).map(|i| unit_weight(i, n)).collect();
-    threads::map(solved.panels.len(), |p| {
+    threads::map(solved.panels.distinct(), |p| {
         let size = |u: &[f64], v: &[f64]| {
             let eta = solved.estimate.eta(u, v, p);
             eta.mean.abs() + VARIATION_WEIGHT * eta.variation.abs()

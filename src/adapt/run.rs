@@ -146,13 +146,13 @@ fn decide(
     }
     let n = solved.panels.len();
     let room = limits.max_panels.map_or(usize::MAX, |most| most.saturating_sub(n));
-    if room == 0 {
+    if room < solved.panels.copies() {
         return (Some(Stop::MaxPanels), Vec::new());
     }
     let cuts = mark::cuts(solved, room);
     if cuts.is_empty() {
         return (Some(Stop::NothingToCut), cuts);
     }
-    let fits = dense::bytes(n + cuts.len(), solved.n_rows()) <= limits.memory;
+    let fits = dense::bytes(n + cuts.len(), solved.n_rows(), solved.panels.copies()) <= limits.memory;
     (if fits { None } else { Some(Stop::Memory) }, cuts)
 }

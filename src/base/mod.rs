@@ -6,6 +6,7 @@
 
 pub mod finding;
 pub mod images;
+pub mod motion;
 pub mod si;
 #[cfg_attr(feature = "parallel", path = "threads_parallel.rs")]
 #[cfg_attr(not(feature = "parallel"), path = "threads_serial.rs")]
@@ -18,6 +19,7 @@ pub use images::ImagePlane;
 pub use images::Images;
 pub use images::ImagesError;
 pub use images::PlaneKind;
+pub use motion::Motion;
 
 /// A point or a vector in space; lengths in metres once a shape is read.
 pub type Vec3 = nalgebra::Vector3<f64>;

@@ -1,5 +1,6 @@
 //! A case as a list of words with their values, defaults filled in.
 
+use crate::base::Motion;
 use crate::base::Vec3;
 use crate::case::Case;
 use crate::case::Electrode;
@@ -103,6 +104,16 @@ fn put_electrode(case: &Case, electrode: &Electrode, put: &mut impl FnMut(String
             say(&format!("place.rotate.{}", n + 1), format!("{} about {}", degrees(*angle), numbers(axis)));
         }
         say("place.shift", metres(&place.shift));
+    }
+    if let Some(copy) = &electrode.copy {
+        say("copy", format!("{} of {} of {}", copy.number + 1, copy.count, copy.of));
+        let motion = match copy.motion {
+            Motion::Turn { through, axis, angle } => {
+                format!("turned by {} about {} through {}", degrees(angle), numbers(&axis), metres(&through))
+            }
+            Motion::Step(step) => format!("shifted by {}", metres(&step)),
+        };
+        say("copy.each", motion);
     }
     if let Some(drawing) = &electrode.drawing {
         say("drawing", drawing.clone());

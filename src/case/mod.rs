@@ -10,6 +10,7 @@ mod listing;
 mod load;
 pub mod machine;
 mod resolve;
+mod resolve_copies;
 mod resolve_electrode;
 mod resolve_plane;
 mod resolve_value;
@@ -27,6 +28,7 @@ pub use load::parse;
 pub use load::read_shapes;
 
 use crate::base::Images;
+use crate::base::Motion;
 use crate::base::Plane;
 use crate::base::Vec3;
 use std::path::PathBuf;
@@ -54,7 +56,7 @@ pub struct Case {
     pub mirrors: Vec<Mirror>,
     /// Earth planes and mirrors together, earth planes first.
     pub images: Images,
-    /// Electrodes in file order.
+    /// Electrodes in file order, each followed by its copies.
     pub electrodes: Vec<Electrode>,
     /// Bonds: names of electrodes, possibly with `earth`.
     pub bonds: Vec<Vec<String>>,
@@ -195,6 +197,21 @@ pub struct Electrode {
     pub place: Option<Place>,
     /// Drawing number.
     pub drawing: Option<String>,
+    /// Which copy it is, if it is repeated.
+    pub copy: Option<Copy>,
+}
+
+/// One of the electrodes that `[[copies]]` makes of one that is drawn; the drawn one is the first.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Copy {
+    /// Name of the electrode as it stands in the case.
+    pub of: String,
+    /// Which, counted from 0.
+    pub number: usize,
+    /// How many there are.
+    pub count: usize,
+    /// From one to the next [m].
+    pub motion: Motion,
 }
 
 /// `[[voltage_case]]`; values as crest (or steady) values.

@@ -9,6 +9,7 @@ use crate::case::Printing;
 use crate::case::Study;
 use crate::case::fault::Fault;
 use crate::case::fault::Sink;
+use crate::case::resolve_copies as copies;
 use crate::case::resolve_electrode as electrode;
 use crate::case::resolve_plane as plane;
 use crate::case::resolve_value as value;
@@ -31,6 +32,8 @@ pub(super) fn resolve(file: &wire::File, text: &str, path: &Path, sink: &mut Sin
         sink.note(0..0, Fault::Missing { word: "electrode", table: "the file".to_owned(), wanted });
     }
     let electrodes = electrode::electrodes(&file.electrode, length_unit, &mut shape_paths, sink);
+    let electrodes = copies::expanded(&file.copies, electrodes, length_unit, sink);
+    electrode::check_guards(&file.electrode, &electrodes, sink);
     let (earth_planes, mirrors, images) = plane::planes(file, length_unit, sink);
     let bonds = electrode::bonds(&file.bond, &electrodes, sink);
     Case {

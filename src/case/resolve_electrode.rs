@@ -11,6 +11,7 @@ use crate::case::SurfaceKind;
 use crate::case::ValueIs;
 use crate::case::fault::Fault;
 use crate::case::fault::Sink;
+use crate::case::resolve_copies as copies;
 use crate::case::resolve_value as value;
 use crate::case::wire;
 use crate::case::wire::Value;
@@ -58,7 +59,6 @@ pub(super) fn electrodes(
             sink.note(span, Fault::Twice { what: "electrode name", name: electrode.name.clone() });
         }
     }
-    check_guards(wires, &electrodes, sink);
     electrodes
 }
 
@@ -90,6 +90,7 @@ fn electrode(
         size_check: size_check(&wire.size_check, unit, sink),
         place: wire.place.as_ref().map(|place| self::place(place, unit, sink)),
         drawing: value::text(&wire.drawing, "drawing", sink),
+        copy: None,
         name,
     }
 }
@@ -263,15 +264,23 @@ fn place(wire: &wire::Place, unit: f64, sink: &mut Sink) -> Place {
     }
 }
 
-fn check_guards(wires: &[Spanned<wire::Electrode>], electrodes: &[Electrode], sink: &mut Sink) {
+/// Notes faults where a guard follows nobody, or itself by way of others; `electrodes` holds the copies of
+/// each electrode in its place.
+pub(super) fn check_guards(wires: &[Spanned<wire::Electrode>], electrodes: &[Electrode], sink: &mut Sink) {
+    let is_copy = |electrode: &Electrode| electrode.copy.as_ref().is_some_and(|copy| 0 < copy.number);
+    let mut drawn = 0;
     let next = |n: usize| match &electrodes[n].role {
         Role::Guard { follows } => electrodes.iter().position(|other| other.name == *follows),
         _ => None,
     };
     let mut told = vec![false; electrodes.len()];
     for (n, electrode) in electrodes.iter().enumerate() {
+        if is_copy(electrode) {
+            continue;
+        }
+        drawn += 1;
         let Role::Guard { follows } = &electrode.role else { continue };
-        let Some(at) = &wires[n].get_ref().follows else { continue };
+        let Some(at) = &wires[drawn - 1].get_ref().follows else { continue };
         if next(n).is_none() && follows != EARTH && !follows.is_empty() {
             sink.note(at.span(), no_electrode("follows", follows, electrodes));
         }
@@ -315,7 +324,11 @@ fn bond(wire: &Spanned<wire::Bond>, electrodes: &[Electrode], sink: &mut Sink) -
     let members = &wire.get_ref().members;
     value::needed(members, "members", wanted, ("a [[bond]]", wire.span()), sink);
     let mut names: Vec<String> = Vec::new();
-    for (name, span) in value::texts(members, "members", wanted, sink) {
+    let given = value::texts(members, "members", wanted, sink).into_iter();
+    // The name of a copied electrode stands for all its copies.
+    for (name, span) in given.flat_map(|(name, span)| {
+        copies::named(&name, electrodes).into_iter().map(move |name| (name, span.clone()))
+    }) {
         if names.contains(&name) {
             sink.note(span, Fault::Twice { what: "member", name: name.clone() });
         } else if name != EARTH && electrodes.iter().all(|electrode| electrode.name != name) {

@@ -42,6 +42,8 @@ pub(super) struct File {
     #[serde(default)]
     pub(super) electrode: Vec<Spanned<Electrode>>,
     #[serde(default)]
+    pub(super) copies: Vec<Spanned<Copies>>,
+    #[serde(default)]
     pub(super) bond: Vec<Spanned<Bond>>,
     #[serde(default)]
     pub(super) earth_plane: Vec<Spanned<EarthPlane>>,
@@ -117,6 +119,23 @@ pub(super) struct Rotations(pub(super) Vec<Spanned<Rotate>>);
 #[serde(deny_unknown_fields)]
 pub(super) struct Rotate {
     pub(super) axis: Field,
+    pub(super) angle: Field,
+}
+
+#[derive(Debug, Deserialize)]
+#[serde(deny_unknown_fields)]
+pub(super) struct Copies {
+    pub(super) of: Field,
+    pub(super) count: Field,
+    pub(super) rotate: Option<Spanned<Turn>>,
+    pub(super) step: Field,
+}
+
+#[derive(Debug, Deserialize)]
+#[serde(deny_unknown_fields)]
+pub(super) struct Turn {
+    pub(super) axis: Field,
+    pub(super) through: Field,
     pub(super) angle: Field,
 }
 
@@ -348,6 +367,8 @@ mod tests {
         agree::<Electrode>(&words::ELECTRODE);
         agree::<Place>(&words::PLACE);
         agree::<Rotate>(&words::ROTATE);
+        agree::<Copies>(&words::COPIES);
+        agree::<Turn>(&words::TURN);
         agree::<Bond>(&words::BOND);
         agree::<EarthPlane>(&words::EARTH_PLANE);
         agree::<Mirror>(&words::MIRROR);

@@ -39,6 +39,7 @@ pub(super) static FILE: Words = Words {
         ("units", Holds::Table(&UNITS)),
         ("surroundings", Holds::Table(&SURROUNDINGS)),
         ("electrode", Holds::Tables(&ELECTRODE)),
+        ("copies", Holds::Tables(&COPIES)),
         ("bond", Holds::Tables(&BOND)),
         ("earth_plane", Holds::Tables(&EARTH_PLANE)),
         ("mirror", Holds::Tables(&MIRROR)),
@@ -49,7 +50,6 @@ pub(super) static FILE: Words = Words {
     ],
     planned: &[
         "wire",
-        "copies",
         "dielectric",
         "node",
         "fitted_capacitor",
@@ -118,6 +118,23 @@ pub(super) static PLACE: Words = Words {
 
 pub(super) static ROTATE: Words =
     Words { table: "rotate", known: &[("axis", Holds::Value), ("angle", Holds::Value)], planned: &[] };
+
+pub(super) static COPIES: Words = Words {
+    table: "[[copies]]",
+    known: &[
+        ("of", Holds::Value),
+        ("count", Holds::Value),
+        ("rotate", Holds::Table(&TURN)),
+        ("step", Holds::Value),
+    ],
+    planned: &[],
+};
+
+pub(super) static TURN: Words = Words {
+    table: "rotate",
+    known: &[("axis", Holds::Value), ("through", Holds::Value), ("angle", Holds::Value)],
+    planned: &[],
+};
 
 pub(super) static BOND: Words =
     Words { table: "[[bond]]", known: &[("members", Holds::Value)], planned: &[] };

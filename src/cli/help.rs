@@ -14,7 +14,7 @@ A CASE FILE, whole (TOML; paths are relative to the file; dimensions invented):
     [units]
     length = \"mm\"                      # of the STL files and of bare numbers; no default
 
-    [[earth_plane]]                    # optional: infinite plane at 0 V, one at most
+    [[earth_plane]]                    # optional: infinite plane at 0 V
     name = \"floor\"
     through = [0, 0, 0]
     facing = [0, 0, 1]                 # to the side on which the electrodes stand
@@ -56,6 +56,9 @@ left_out; [units] capacitance, field (for printing); [surroundings] relative_per
 crease_angle = \"30 deg\", shell = 0 or a point it holds, drawing,
 place = { shift = [x, y, z], rotate = { axis = [0, 0, 1], angle = \"30 deg\" }, scale = 1 };
 [[bond]] members = [\"a\", \"b\"], one of which may be \"earth\";
+[[mirror]] name, through, facing, parity = \"even\" (beyond it the same shapes at the same potentials)
+or \"odd\" (at the opposite ones): draw the part in front only; earth planes and mirrors together at
+most three, at right angles;
 [[look]] point = [x, y, z], or sheet = { corner = [x, y, z], along = [x, y, z],
 across = [x, y, z], points = [m, n] } with the two sides as vectors.
 
@@ -157,6 +160,14 @@ pub(super) const KEY: &[(&str, &str)] = &[
         "V_i = sum over j of p_ij Q_j: the inverse of the Maxwell capacitance matrix. p_ij >= 0.",
     ),
     ("Reference", "Earth planes and infinity are one node at 0 V, named `earth`."),
+    (
+        "Part and whole",
+        "An even mirror: each electrode is the part drawn and its copies, all at one potential. Matrices, \
+         charges, energies, bars and the netlist are those of the whole, twice those of the part for each even \
+         mirror; the record holds the factor (part_of_whole) and the matrix of the part \
+         (part_capacitance_farad). An odd mirror: beyond it stand copies at the opposite potential, which are not \
+         counted; its plane is at 0 V and part of `earth`.",
+    ),
     (
         "Rows",
         "Rows and columns stand in the order of the case file. Bonded electrodes that touch are one row, \

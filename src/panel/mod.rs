@@ -5,6 +5,7 @@
 //! Symbols: as in the crate's table.
 
 mod place;
+pub mod ring;
 
 use crate::base::Images;
 use crate::geom::Triangle;
@@ -14,6 +15,8 @@ use crate::mesh::Net;
 use crate::mesh::Piece;
 use crate::mesh::Spot;
 use std::sync::Arc;
+
+pub use ring::Ring;
 
 /// Panels of one round; panel `p` stands at index `p` of every array.
 #[derive(Clone, Debug)]
@@ -34,6 +37,8 @@ pub struct Panels {
     pub n_rows: usize,
     /// Earth planes and mirrors.
     pub images: Images,
+    /// How the panels repeat around an axis, if they do.
+    pub ring: Option<Ring>,
     /// What was drawn.
     pub assembly: Arc<Assembly>,
 }
@@ -97,6 +102,7 @@ pub fn from_origins(assembly: Arc<Assembly>, images: Images, origins: &[Origin])
         bary: origins.iter().map(|origin| origin.bary).collect(),
         n_rows: assembly.rows.len(),
         images,
+        ring: None,
         assembly,
     }
 }

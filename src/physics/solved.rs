@@ -145,6 +145,12 @@ impl Solved {
         let row = |i: usize| -> Vec<Bar> {
             (0..n).map(|j| self.bar(&unit_weight(i, n), &unit_weight(j, n))).collect()
         };
-        ((0..n).map(row).collect(), (0..n).map(|i| self.bar(&unit_weight(i, n), &ones)).collect())
+        let first = self.panels.first_rows();
+        let (mut entries, mut earth) = (vec![vec![Bar::default(); n]; n], vec![Bar::default(); n]);
+        for i in first {
+            entries[i] = row(i);
+            earth[i] = self.bar(&unit_weight(i, n), &ones);
+        }
+        (self.panels.turned_entries(entries), self.panels.turned_rows(earth))
     }
 }

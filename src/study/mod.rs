@@ -6,7 +6,9 @@
 
 mod bodies;
 mod checks;
+mod copies;
 mod inspect;
+mod part;
 mod prove;
 mod prove_shapes;
 mod record;

@@ -3,6 +3,7 @@
 use super::Outcome;
 use super::StudyError;
 use super::checks;
+use super::part;
 use super::state::States;
 use super::voltage;
 use crate::adapt::Finished;
@@ -94,6 +95,8 @@ pub(super) fn outcome(
         earth_share: earth.iter().enumerate().map(|(i, c)| c / solved.matrix[i][i]).collect(),
         mutual_farad: circuit::mutual(&solved.matrix),
         mutual_bar_farad: without_diagonal(&bar_matrix),
+        part_of_whole: part::part_of_whole(case),
+        part_capacitance_farad: part::capacitance(solved),
         capacitance_farad: solved.matrix.clone(),
         capacitance_bar_farad: bar_matrix,
         earth_bar_farad: totals(&earth_bars),
@@ -139,13 +142,17 @@ fn rows(case: &Case, solved: &Solved) -> Vec<RowInfo> {
     solved.panels.assembly.rows.iter().map(info).collect()
 }
 
-fn findings(case: &Case, solved: &Solved) -> Vec<FindingRecord> {
-    let stored = |finding: &Finding| FindingRecord {
+/// A finding as it is stored.
+pub(super) fn stored(finding: &Finding) -> FindingRecord {
+    FindingRecord {
         severity: finding.severity.word().to_owned(),
         code: finding.code.to_owned(),
         text: finding.text.clone(),
         where_metre: finding.place.map(|p| [p.x, p.y, p.z]),
-    };
+    }
+}
+
+fn findings(case: &Case, solved: &Solved) -> Vec<FindingRecord> {
     let mut all: Vec<FindingRecord> = solved.panels.assembly.findings.iter().map(stored).collect();
     all.extend(solved_findings(case, solved).iter().map(stored));
     if case.accuracy.max_field.is_some() {
@@ -219,8 +226,7 @@ fn parts(case: &Case, solved: &Solved) -> Vec<Part> {
     let panels = &solved.panels;
     let part = |(k, body): (usize, &crate::mesh::Body)| {
         let held: Vec<usize> = (0..panels.len()).filter(|p| panels.body[*p] as usize == k).collect();
-        let (lo, hi) = weld::bounds(&body.surface.welded.points);
-        let size = hi - lo;
+        let (facets, size) = part::drawn(&body.surface.welded, &panels.images);
         let surface = match case.electrodes[k].surface {
             SurfaceKind::Rebuilt => "rebuilt",
             SurfaceKind::AsDrawn => "as_drawn",
@@ -229,7 +235,7 @@ fn parts(case: &Case, solved: &Solved) -> Vec<Part> {
             name: body.name.clone(),
             kind: "electrode".to_owned(),
             surface: surface.to_owned(),
-            facets: body.surface.welded.facets.len(),
+            facets,
             panels: held.len(),
             area_m2: held.iter().map(|p| panels.triangles[*p].area()).sum(),
             size_metre: [size.x, size.y, size.z],
@@ -283,7 +289,8 @@ fn effort(finished: &Finished) -> Effort {
         panels,
         unknowns: panels,
         rounds: finished.rounds.len(),
-        method: "dense".to_owned(),
+        method: if 1 < finished.solved.panels.copies() { "dense blocks of a ring" } else { "dense" }
+            .to_owned(),
         seconds: BTreeMap::new(),
         peak_memory_bytes: machine::peak_memory().map_or(0, |bytes| bytes as u64),
         threads: threads::count(),

@@ -4,6 +4,7 @@ use super::Event;
 use super::Outcome;
 use super::StudyError;
 use super::bodies;
+use super::copies;
 use super::record;
 use super::state;
 use crate::adapt;
@@ -19,6 +20,7 @@ use crate::mesh::Assembly;
 use crate::mesh::assembly;
 use crate::operator::dense;
 use crate::panel;
+use crate::panel::Panels;
 use std::collections::BTreeMap;
 use std::sync::Arc;
 use std::time::Instant;
@@ -51,14 +53,16 @@ fn run_here(case: &Case, shapes: &Shapes, progress: &(dyn Fn(&Event) + Sync)) ->
         clock = Instant::now();
     };
     progress(&Event::Phase("inspect"));
-    let assembly = Arc::new(assemble(case, shapes)?);
+    let assembly = assemble(case, shapes)?;
     let states = state::states(case, &assembly).map_err(StudyError::Refused)?;
+    let (panels, note) = copies::arranged(case, panel::build(Arc::new(assembly), &case.images));
     lap(&mut seconds, "inspect");
     progress(&Event::Phase("refine"));
-    let finished = refine(case, assembly, progress)?;
+    let finished = refine(case, panels, progress)?;
     lap(&mut seconds, "refine");
     progress(&Event::Phase("results"));
-    let outcome = record::outcome(case, shapes, &finished, &states)?;
+    let mut outcome = record::outcome(case, shapes, &finished, &states)?;
+    outcome.record.findings.extend(note.iter().map(record::stored));
     lap(&mut seconds, "results");
     Ok(with_seconds(outcome, seconds))
 }
@@ -98,18 +102,14 @@ pub(super) fn memory_limit(case: &Case) -> f64 {
     case.accuracy.memory_limit.unwrap_or_else(free)
 }
 
-fn refine(
-    case: &Case,
-    assembly: Arc<Assembly>,
-    progress: &(dyn Fn(&Event) + Sync),
-) -> Result<Finished, StudyError> {
-    let start = adapt::at_least(FIRST_PANELS, panel::build(assembly, &case.images));
+fn refine(case: &Case, panels: Panels, progress: &(dyn Fn(&Event) + Sync)) -> Result<Finished, StudyError> {
+    let start = adapt::at_least(FIRST_PANELS, panels);
     let limits = Limits {
         max_panels: case.accuracy.max_panels,
         time: case.accuracy.time_limit,
         memory: memory_limit(case),
     };
-    let needed = dense::bytes(start.len(), start.n_rows);
+    let needed = dense::bytes(start.len(), start.n_rows, start.copies());
     if limits.memory < needed {
         return Err(StudyError::Memory {
             panels: start.len(),

@@ -9,6 +9,7 @@ mod broken_toml;
 mod case;
 mod circuit;
 mod cli;
+mod copies;
 mod fixtures;
 mod geometry;
 mod golden;

@@ -288,3 +288,74 @@ fn looks_behind_mirrors() {
     );
     assert_eq!(media[1], Medium::BehindEarth);
 }
+
+/// A quarter of a box between two even mirrors, over an odd one: the record names part and whole.
+#[test]
+fn the_record_names_the_part_and_the_whole() {
+    let text = r#"
+[units]
+length = "m"
+[[mirror]]
+name = "left"
+through = [0, 0, 0]
+facing = [1, 0, 0]
+parity = "even"
+[[mirror]]
+name = "front"
+through = [0, 0, 0]
+facing = [0, 1, 0]
+parity = "even"
+[[electrode]]
+name = "box"
+shape = "box.stl"
+[[electrode]]
+name = "ball"
+shape = "ball.stl"
+role = "floating"
+[[voltage_case]]
+name = "v"
+value_is = "dc"
+potentials = { box = "1 V" }
+[accuracy]
+capacitance = "1 %"
+"#;
+    let quarter = block([0.0; 3], [0.5; 3], 2);
+    let ball = shapes::moved(&shapes::scaled(&shapes::icosphere(3), 0.2), [1.0, 1.0, 0.3]);
+    let record = solved_case(text, &[quarter, ball]);
+    assert_eq!(record.part_of_whole.factor, 4.0);
+    assert!(record.part_of_whole.text.contains("4 times those of the part"), "{}", record.part_of_whole.text);
+    let (whole, part) = (&record.capacitance_farad, &record.part_capacitance_farad);
+    assert!((whole[0][0] / part[0][0] - 4.0).abs() < 1e-15);
+    let v = &record.voltage_cases[0];
+    let charge = v.charges_coulomb["box"];
+    assert!((2.0 * v.energy_joule - charge).abs() <= 1e-12 * charge, "½ Q V of the whole");
+    assert!(record.checks.iter().all(|check| check.pass), "{:?}", record.checks);
+    let size = record.parts[0].size_metre;
+    assert!(size.iter().all(|c| (c - 0.5).abs() < 1e-12), "of the part: {size:?}");
+    // The box alone, 1 × 1 × 0.5 drawn out, and four balls, against the same without mirrors.
+    let full = text.replace("facing", "# facing").replace("[[mirror]]", "[[earth_plane]]");
+    let head = full.find("[[earth_plane]]").unwrap();
+    let rest = full.find("[[electrode]]").unwrap();
+    let full = format!("{}{}", &full[..head], &full[rest..]).replace(
+        "[[voltage_case]]",
+        "[[copies]]\nof = \"ball\"\ncount = 4\nrotate = { axis = [0, 0, 1] }\n[[voltage_case]]",
+    );
+    let box_whole = block([-0.5, -0.5, 0.0], [0.5; 3], 2);
+    let ball = shapes::moved(&shapes::scaled(&shapes::icosphere(3), 0.2), [1.0, 1.0, 0.3]);
+    let drawn = solved_case(&full, &[box_whole, ball]);
+    let bars = record.capacitance_bar_farad[0][0] + drawn.capacitance_bar_farad[0][0];
+    assert!((whole[0][0] - drawn.capacitance_farad[0][0]).abs() <= bars, "{:e}", whole[0][0]);
+    let balls: f64 = drawn.capacitance_farad[0][1..].iter().sum();
+    let bars = record.capacitance_bar_farad[0][1] + drawn.capacitance_bar_farad[0][1..].iter().sum::<f64>();
+    assert!((whole[0][1] - balls).abs() <= bars, "{:e} and {balls:e}", whole[0][1]);
+}
+
+fn solved_case(text: &str, files: &[Vec<Facet>]) -> amberskin::record::Record {
+    let case = amberskin::case::parse(text, std::path::Path::new("c.toml")).unwrap_or_else(|e| panic!("{e}"));
+    let file = |(path, facets): (&String, &Vec<Facet>)| amberskin::case::ShapeFile {
+        path: path.clone(),
+        bytes: shapes::binary_stl(facets),
+    };
+    let shapes = amberskin::case::Shapes { files: case.shape_paths.iter().zip(files).map(file).collect() };
+    amberskin::study::run(&case, &shapes, &|_| {}).unwrap_or_else(|e| panic!("{e:?}")).record
+}
