@@ -59,6 +59,8 @@ place = { shift = [x, y, z], rotate = { axis = [0, 0, 1], angle = \"30 deg\" }, 
 [[mirror]] name, through, facing, parity = \"even\" (beyond it the same shapes at the same potentials)
 or \"odd\" (at the opposite ones): draw the part in front only; earth planes and mirrors together at
 most three, at right angles;
+[[copies]] of = \"name\", count, and rotate = { axis, through, angle } or step = [x, y, z]: name.1 is the
+drawn one; without an angle the turn is divided evenly;
 [[look]] point = [x, y, z], or sheet = { corner = [x, y, z], along = [x, y, z],
 across = [x, y, z], points = [m, n] } with the two sides as vectors.
 
@@ -173,6 +175,12 @@ pub(super) const KEY: &[(&str, &str)] = &[
         "Rows and columns stand in the order of the case file. Bonded electrodes that touch are one row, \
          named by its members joined with +; bonded ones apart keep their rows. An electrode bonded with \
          `earth` that meets the earth plane has no row.",
+    ),
+    (
+        "Copies",
+        "[[copies]] turns electrode `name` into name.1 (the drawn one), name.2, ... Each is a row of its own; \
+         in voltage cases and bonds `name` stands for all that are not named themselves, a charge for the charge \
+         of each.",
     ),
     (
         "Bars",

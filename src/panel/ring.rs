@@ -160,7 +160,7 @@ impl Panels {
         cuts.iter().for_each(|(p, edge)| {
             edges[p % m].get_or_insert(*edge);
         });
-        let of_sector = |s: usize| (0..m).filter_map(move |q| Some((s * m + q, q)));
+        let of_sector = |s: usize| (0..m).map(move |q| (s * m + q, q));
         let all = (0..self.copies()).flat_map(of_sector);
         all.filter_map(|(p, q)| edges[q].map(|edge| (p, edge))).collect()
     }
