@@ -56,11 +56,11 @@ left_out; [units] capacitance, field (for printing); [surroundings] relative_per
 crease_angle = \"30 deg\", shell = 0 or a point it holds, drawing,
 place = { shift = [x, y, z], rotate = { axis = [0, 0, 1], angle = \"30 deg\" }, scale = 1 };
 [[bond]] members = [\"a\", \"b\"], one of which may be \"earth\";
-[[mirror]] name, through, facing, parity = \"even\" (beyond it the same shapes at the same potentials)
-or \"odd\" (at the opposite ones): draw the part in front only; earth planes and mirrors together at
-most three, at right angles;
-[[copies]] of = \"name\", count, and rotate = { axis, through, angle } or step = [x, y, z]: name.1 is the
-drawn one; without an angle the turn is divided evenly;
+[[mirror]] name, through, facing, parity = \"even\" (beyond it the same shapes at the same
+potentials) or \"odd\" (at the opposite ones): draw the part in front only; earth planes and
+mirrors together at most three, at right angles;
+[[copies]] of = \"name\", count, and rotate = { axis, through, angle } or step = [x, y, z]: name.1
+is the drawn one; without an angle the turn is divided evenly;
 [[look]] point = [x, y, z], or sheet = { corner = [x, y, z], along = [x, y, z],
 across = [x, y, z], points = [m, n] } with the two sides as vectors.
 
