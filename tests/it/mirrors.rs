@@ -17,6 +17,8 @@ use amberskin::physics::look;
 use amberskin::physics::look::Map;
 use amberskin::physics::look::Medium;
 use amberskin::physics::solved::Solved;
+use amberskin::report::csv;
+use amberskin::report::netlist;
 use std::f64::consts::PI;
 
 /// One round on the facets as they are.
@@ -326,6 +328,9 @@ capacitance = "1 %"
     assert!(record.part_of_whole.text.contains("4 times those of the part"), "{}", record.part_of_whole.text);
     let (whole, part) = (&record.capacitance_farad, &record.part_capacitance_farad);
     assert!((whole[0][0] / part[0][0] - 4.0).abs() < 1e-15);
+    for text in printed(&record) {
+        assert!(text.contains("part and whole: an electrode is the part drawn"), "{text}");
+    }
     let v = &record.voltage_cases[0];
     let charge = v.charges_coulomb["box"];
     assert!((2.0 * v.energy_joule - charge).abs() <= 1e-12 * charge, "½ Q V of the whole");
@@ -358,4 +363,14 @@ fn solved_case(text: &str, files: &[Vec<Facet>]) -> amberskin::record::Record {
     };
     let shapes = amberskin::case::Shapes { files: case.shape_paths.iter().zip(files).map(file).collect() };
     amberskin::study::run(&case, &shapes, &|_| {}).unwrap_or_else(|e| panic!("{e:?}")).record
+}
+
+/// What is handed over: netlist and both layouts of the matrix.
+fn printed(record: &amberskin::record::Record) -> [String; 3] {
+    let options = netlist::Options { name: "part".to_owned(), bleeds: false };
+    let mut out: [Vec<u8>; 3] = Default::default();
+    netlist::write(record, &options, &mut out[0]).unwrap();
+    csv::square(record, csv::Form::Maxwell, &mut out[1]).unwrap();
+    csv::long(record, &mut out[2]).unwrap();
+    out.map(|bytes| String::from_utf8(bytes).unwrap())
 }
