@@ -29,12 +29,13 @@ pub fn whole(surface: Surface, images: &Images, name: &str) -> Result<(Surface, 
     if !refused.is_empty() {
         return Err(refused);
     }
-    let (mut welded, mut findings) = (surface.welded, Vec::new());
-    for plane in images.even() {
-        let (doubled, caps) = doubled(welded, plane, abs_tol);
-        welded = doubled;
-        findings.extend((0 < caps).then(|| cap_note(name, caps, plane)));
-    }
+    let findings = images.even().filter_map(|plane| {
+        let flat = |facet: &&[u32; 3]| in_plane(&surface.welded.points, facet, plane, abs_tol);
+        let caps = surface.welded.facets.iter().filter(flat).count();
+        (0 < caps).then(|| cap_note(name, caps, plane))
+    });
+    let findings = findings.collect();
+    let welded = images.even().fold(surface.welded, |welded, plane| doubled(welded, plane, abs_tol));
     Ok((Surface { welded, ..surface }, findings))
 }
 
@@ -85,8 +86,8 @@ fn cap_note(name: &str, caps: usize, plane: &Plane) -> Finding {
     }
 }
 
-/// A body in front of `plane` joined to its copy behind it, and how many facets in the plane were left out.
-fn doubled(welded: Welded, plane: &Plane, abs_tol: f64) -> (Welded, usize) {
+/// A body in front of `plane` joined to its copy behind it, without the facets in the plane.
+fn doubled(welded: Welded, plane: &Plane, abs_tol: f64) -> Welded {
     let flat = |facet: &[u32; 3]| in_plane(&welded.points, facet, plane, abs_tol);
     let kept: Vec<[u32; 3]> = welded.facets.iter().copied().filter(|facet| !flat(facet)).collect();
     let low = |k: u32| plane.height(&welded.points[k as usize]).abs() <= abs_tol;
@@ -95,9 +96,8 @@ fn doubled(welded: Welded, plane: &Plane, abs_tol: f64) -> (Welded, usize) {
     for side in open.iter().filter(|side| side.ends.iter().all(|k| low(*k))) {
         side.ends.iter().for_each(|k| shared[*k as usize] = true);
     }
-    let caps = welded.facets.len() - kept.len();
     if !shared.contains(&true) {
-        return (welded, 0);
+        return welded;
     }
     let mut points = Vec::with_capacity(2 * welded.points.len());
     let mut place: Vec<Option<[u32; 2]>> = vec![None; welded.points.len()];
@@ -115,5 +115,5 @@ fn doubled(welded: Welded, plane: &Plane, abs_tol: f64) -> (Welded, usize) {
     let index = |k: u32, side: usize| place[k as usize].map_or(0, |pair| pair[side]);
     let part = kept.iter().map(|facet| facet.map(|k| index(k, 0)));
     let copy = kept.iter().map(|[a, b, c]| [index(*a, 1), index(*c, 1), index(*b, 1)]);
-    (Welded { facets: part.chain(copy).collect(), points }, caps)
+    Welded { facets: part.chain(copy).collect(), points }
 }
