@@ -5,7 +5,6 @@ use super::split;
 use crate::base::threads;
 use crate::physics::estimate::Estimate;
 use crate::physics::faceting;
-use crate::physics::permittivity;
 use crate::physics::solved::Bar;
 use crate::physics::solved::Solved;
 use crate::physics::solved::unit_weight;
@@ -67,8 +66,9 @@ pub fn reached(matrix: &[Vec<f64>], bars: &(Vec<Vec<Bar>>, Vec<Bar>)) -> f64 {
 }
 
 /// Cuts for the next round: the panels that carry [`BULK`] of the indicators, at most `room` of them,
-/// each along its steepest edge.
+/// each along its steepest edge.  In a ring a panel stands for its copies in all sectors.
 pub(super) fn cuts(solved: &Solved, room: usize) -> Vec<(usize, usize)> {
+    let room = room / solved.panels.copies();
     let told = indicators(solved);
     let bends: Vec<f64> =
         (0..told.len()).map(|p| (0..solved.n_rows()).map(|i| bend(solved, p, i)).sum()).collect();
@@ -94,14 +94,15 @@ pub(super) fn cuts(solved: &Solved, room: usize) -> Vec<(usize, usize)> {
         let bend = || if bent[p] { split::most_bent(&solved.panels, p).0 } else { edge(p) };
         split::overbent(&solved.panels, p).unwrap_or_else(bend)
     };
-    marked.into_iter().map(|p| (p, side(p))).collect()
+    let cuts: Vec<(usize, usize)> = marked.into_iter().map(|p| (p, side(p))).collect();
+    solved.panels.in_all_sectors(&cuts)
 }
 
 /// Share in the indicator of what a panel does not follow of its surface [1], against what its residuals
 /// tell: as in the bar.
 fn bend(solved: &Solved, p: usize, i: usize) -> f64 {
     let density = solved.charges.density[i][p];
-    permittivity(solved.eps_r)
+    solved.permittivity_of_whole()
         * faceting::BULGE_SHARE
         * solved.panels.offset[p].abs()
         * solved.panels.triangles[p].area()
@@ -110,12 +111,12 @@ fn bend(solved: &Solved, p: usize, i: usize) -> f64 {
         / scale(&solved.matrix, i, Some(i))
 }
 
-/// Share of every panel in the bars, each relative to what is allowed [1].
+/// Share of every distinct panel in the bars, each relative to what is allowed [1].
 fn indicators(solved: &Solved) -> Vec<f64> {
     let n = solved.n_rows();
     let ones = vec![1.0; n];
     let weights: Vec<Vec<f64>> = (0..n).map(|i| unit_weight(i, n)).collect();
-    threads::map(solved.panels.len(), |p| {
+    threads::map(solved.panels.distinct(), |p| {
         let size = |u: &[f64], v: &[f64]| {
             let eta = solved.estimate.eta(u, v, p);
             eta.mean.abs() + VARIATION_WEIGHT * eta.variation.abs()

@@ -189,7 +189,7 @@ fn decide(
     }
     let n = solved.panels.len();
     let room = limits.max_panels.map_or(usize::MAX, |most| most.saturating_sub(n));
-    if room == 0 {
+    if room < solved.panels.copies() {
         return Next::Stop(Stop::MaxPanels);
     }
     let charges = !charges_met || unmet.is_some_and(|(aim, sight)| sight.wants_charges(aim));
@@ -204,7 +204,7 @@ fn decide(
     if panels.len() == n {
         return Next::Stop(Stop::NothingToCut);
     }
-    let fits = dense::bytes(panels.len(), solved.n_rows()) <= limits.memory;
+    let fits = dense::bytes(panels.len(), solved.n_rows(), solved.panels.copies()) <= limits.memory;
     if fits { Next::Panels(Box::new(panels)) } else { Next::Stop(Stop::Memory) }
 }
 

@@ -6,12 +6,13 @@ use crate::panel::Origin;
 use crate::panel::Panels;
 
 /// Panels with each `cuts[k] = (panel, edge)` cut at the middle of its edge; edge `e` runs from corner
-/// `e` to corner `e + 1`.  Children stand where their parent stood.
+/// `e` to corner `e + 1`.  Children stand where their parent stood.  In a ring every cut is made in all sectors.
 ///
 /// # Panics
 /// If the cuts are not in rising order of panels.
 pub fn bisect(panels: &Panels, cuts: &[(usize, usize)]) -> Panels {
     assert!(cuts.windows(2).all(|pair| pair[0].0 < pair[1].0), "cuts in rising order of panels");
+    let cuts = panels.in_all_sectors(cuts);
     let mut next = cuts.iter().peekable();
     let mut origins: Vec<Origin> = Vec::with_capacity(panels.len() + cuts.len());
     for p in 0..panels.len() {
@@ -21,7 +22,12 @@ pub fn bisect(panels: &Panels, cuts: &[(usize, usize)]) -> Panels {
             None => origins.push(origin),
         }
     }
-    panel::from_origins(panels.assembly.clone(), panels.charts.clone(), panels.plane, &origins)
+    let next =
+        panel::from_origins(panels.assembly.clone(), panels.charts.clone(), panels.images.clone(), &origins);
+    match &panels.ring {
+        Some(ring) => panel::ring::turned(next, ring.clone()),
+        None => next,
+    }
 }
 
 fn halves(origin: &Origin, edge: usize) -> [Origin; 2] {

@@ -1,5 +1,6 @@
 //! A case as a list of words with their values, defaults filled in.
 
+use crate::base::Motion;
 use crate::base::Vec3;
 use crate::case::Case;
 use crate::case::Electrode;
@@ -26,9 +27,15 @@ pub fn resolved(case: &Case) -> Vec<(String, String)> {
     put("units.capacitance".to_owned(), case.printing.capacitance_name.clone());
     put("units.field".to_owned(), case.printing.field_name.clone());
     put("surroundings.relative_permittivity".to_owned(), case.relative_permittivity.to_string());
-    if let Some(earth) = &case.earth_plane {
+    for earth in &case.earth_planes {
         put(format!("earth_plane.{}.through", earth.name), metres(&earth.plane.through));
         put(format!("earth_plane.{}.facing", earth.name), numbers(&earth.plane.facing));
+    }
+    for mirror in &case.mirrors {
+        put(format!("mirror.{}.through", mirror.name), metres(&mirror.plane.through));
+        put(format!("mirror.{}.facing", mirror.name), numbers(&mirror.plane.facing));
+        let parity = if mirror.even { "even" } else { "odd" };
+        put(format!("mirror.{}.parity", mirror.name), parity.to_owned());
     }
     for electrode in &case.electrodes {
         put_electrode(case, electrode, &mut put);
@@ -100,6 +107,16 @@ fn put_electrode(case: &Case, electrode: &Electrode, put: &mut impl FnMut(String
             say(&format!("place.rotate.{}", n + 1), format!("{} about {}", degrees(*angle), numbers(axis)));
         }
         say("place.shift", metres(&place.shift));
+    }
+    if let Some(copy) = &electrode.copy {
+        say("copy", format!("{} of {} of {}", copy.number + 1, copy.count, copy.of));
+        let motion = match copy.motion {
+            Motion::Turn { through, axis, angle } => {
+                format!("turned by {} about {} through {}", degrees(angle), numbers(&axis), metres(&through))
+            }
+            Motion::Step(step) => format!("shifted by {}", metres(&step)),
+        };
+        say("copy.each", motion);
     }
     if let Some(drawing) = &electrode.drawing {
         say("drawing", drawing.clone());

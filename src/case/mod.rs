@@ -10,7 +10,9 @@ mod listing;
 mod load;
 pub mod machine;
 mod resolve;
+mod resolve_copies;
 mod resolve_electrode;
+mod resolve_plane;
 mod resolve_value;
 mod resolve_voltage;
 mod wire;
@@ -25,6 +27,8 @@ pub use load::load;
 pub use load::parse;
 pub use load::read_shapes;
 
+use crate::base::Images;
+use crate::base::Motion;
 use crate::base::Plane;
 use crate::base::Vec3;
 use std::path::PathBuf;
@@ -46,9 +50,13 @@ pub struct Case {
     pub printing: Printing,
     /// Relative permittivity of the surroundings [1].
     pub relative_permittivity: f64,
-    /// The earth plane.
-    pub earth_plane: Option<EarthPlane>,
-    /// Electrodes in file order.
+    /// Earth planes in file order.
+    pub earth_planes: Vec<EarthPlane>,
+    /// Mirrors in file order.
+    pub mirrors: Vec<Mirror>,
+    /// Earth planes and mirrors together, earth planes first.
+    pub images: Images,
+    /// Electrodes in file order, each followed by its copies.
     pub electrodes: Vec<Electrode>,
     /// Bonds: names of electrodes, possibly with `earth`.
     pub bonds: Vec<Vec<String>>,
@@ -95,6 +103,17 @@ pub struct EarthPlane {
     pub name: String,
     /// The plane [m].
     pub plane: Plane,
+}
+
+/// `[[mirror]]`.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Mirror {
+    /// Name.
+    pub name: String,
+    /// The plane [m].
+    pub plane: Plane,
+    /// Whether the copies are at the same potential (even) or at the opposite one (odd).
+    pub even: bool,
 }
 
 /// State of an electrode in a voltage case unless the case says otherwise.
@@ -180,6 +199,21 @@ pub struct Electrode {
     pub place: Option<Place>,
     /// Drawing number.
     pub drawing: Option<String>,
+    /// Which copy it is, if it is repeated.
+    pub copy: Option<Copy>,
+}
+
+/// One of the electrodes that `[[copies]]` makes of one that is drawn; the drawn one is the first.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Copy {
+    /// Name of the electrode as it stands in the case.
+    pub of: String,
+    /// Which, counted from 0.
+    pub number: usize,
+    /// How many there are.
+    pub count: usize,
+    /// From one to the next [m].
+    pub motion: Motion,
 }
 
 /// `[[voltage_case]]`; values as crest (or steady) values.

@@ -9,7 +9,9 @@ use crate::case::Printing;
 use crate::case::Study;
 use crate::case::fault::Fault;
 use crate::case::fault::Sink;
+use crate::case::resolve_copies as copies;
 use crate::case::resolve_electrode as electrode;
+use crate::case::resolve_plane as plane;
 use crate::case::resolve_value as value;
 use crate::case::resolve_voltage as voltage;
 use crate::case::wire;
@@ -33,6 +35,9 @@ pub(super) fn resolve(file: &wire::File, text: &str, path: &Path, sink: &mut Sin
         sink.note(0..0, Fault::Missing { word: "electrode", table: "the file".to_owned(), wanted });
     }
     let electrodes = electrode::electrodes(&file.electrode, length_unit, &mut shape_paths, sink);
+    let electrodes = copies::expanded(&file.copies, electrodes, length_unit, sink);
+    electrode::check_guards(&file.electrode, &electrodes, sink);
+    let (earth_planes, mirrors, images) = plane::planes(file, length_unit, sink);
     let bonds = electrode::bonds(&file.bond, &electrodes, sink);
     Case {
         path: path.to_owned(),
@@ -42,7 +47,9 @@ pub(super) fn resolve(file: &wire::File, text: &str, path: &Path, sink: &mut Sin
         length_name,
         printing: printing(file, sink),
         relative_permittivity: relative_permittivity(file.surroundings.as_ref(), sink),
-        earth_plane: electrode::earth_plane(&file.earth_plane, length_unit, sink),
+        earth_planes,
+        mirrors,
+        images,
         voltage_cases: voltage::voltage_cases(&file.voltage_case, &electrodes, &bonds, sink),
         electrodes,
         bonds,

@@ -1,10 +1,8 @@
-//! Electrodes, bonds and the earth plane: names, states and places.
+//! Electrodes and bonds: names, states and places.
 
-use crate::base::Plane;
 use crate::base::Vec3;
 use crate::base::units;
 use crate::base::units::Dimension;
-use crate::case::EarthPlane;
 use crate::case::Electrode;
 use crate::case::Place;
 use crate::case::Role;
@@ -13,6 +11,7 @@ use crate::case::SurfaceKind;
 use crate::case::ValueIs;
 use crate::case::fault::Fault;
 use crate::case::fault::Sink;
+use crate::case::resolve_copies as copies;
 use crate::case::resolve_value as value;
 use crate::case::wire;
 use crate::case::wire::Value;
@@ -60,7 +59,6 @@ pub(super) fn electrodes(
             sink.note(span, Fault::Twice { what: "electrode name", name: electrode.name.clone() });
         }
     }
-    check_guards(wires, &electrodes, sink);
     electrodes
 }
 
@@ -93,6 +91,7 @@ fn electrode(
         size_check: size_check(&wire.size_check, unit, sink),
         place: wire.place.as_ref().map(|place| self::place(place, unit, sink)),
         drawing: value::text(&wire.drawing, "drawing", sink),
+        copy: None,
         name,
     }
 }
@@ -278,15 +277,23 @@ fn place(wire: &wire::Place, unit: f64, sink: &mut Sink) -> Place {
     }
 }
 
-fn check_guards(wires: &[Spanned<wire::Electrode>], electrodes: &[Electrode], sink: &mut Sink) {
+/// Notes faults where a guard follows nobody, or itself by way of others; `electrodes` holds the copies of
+/// each electrode in its place.
+pub(super) fn check_guards(wires: &[Spanned<wire::Electrode>], electrodes: &[Electrode], sink: &mut Sink) {
+    let is_copy = |electrode: &Electrode| electrode.copy.as_ref().is_some_and(|copy| 0 < copy.number);
+    let mut drawn = 0;
     let next = |n: usize| match &electrodes[n].role {
         Role::Guard { follows } => electrodes.iter().position(|other| other.name == *follows),
         _ => None,
     };
     let mut told = vec![false; electrodes.len()];
     for (n, electrode) in electrodes.iter().enumerate() {
+        if is_copy(electrode) {
+            continue;
+        }
+        drawn += 1;
         let Role::Guard { follows } = &electrode.role else { continue };
-        let Some(at) = &wires[n].get_ref().follows else { continue };
+        let Some(at) = &wires[drawn - 1].get_ref().follows else { continue };
         if next(n).is_none() && follows != EARTH && !follows.is_empty() {
             sink.note(at.span(), no_electrode("follows", follows, electrodes));
         }
@@ -330,7 +337,11 @@ fn bond(wire: &Spanned<wire::Bond>, electrodes: &[Electrode], sink: &mut Sink) -
     let members = &wire.get_ref().members;
     value::needed(members, "members", wanted, ("a [[bond]]", wire.span()), sink);
     let mut names: Vec<String> = Vec::new();
-    for (name, span) in value::texts(members, "members", wanted, sink) {
+    let given = value::texts(members, "members", wanted, sink).into_iter();
+    // The name of a copied electrode stands for all its copies.
+    for (name, span) in given.flat_map(|(name, span)| {
+        copies::named(&name, electrodes).into_iter().map(move |name| (name, span.clone()))
+    }) {
         if names.contains(&name) {
             sink.note(span, Fault::Twice { what: "member", name: name.clone() });
         } else if name != EARTH && electrodes.iter().all(|electrode| electrode.name != name) {
@@ -354,27 +365,4 @@ fn bond(wire: &Spanned<wire::Bond>, electrodes: &[Electrode], sink: &mut Sink) -
         sink.note(at.span(), Fault::BondName { name: joined });
     }
     names
-}
-
-/// The earth plane; a second one is a fault.
-pub(super) fn earth_plane(
-    wires: &[Spanned<wire::EarthPlane>],
-    unit: f64,
-    sink: &mut Sink,
-) -> Option<EarthPlane> {
-    for second in wires.iter().skip(1) {
-        sink.note(second.span(), Fault::SecondPlane);
-    }
-    let wire = wires.first()?;
-    let (span, wire) = (wire.span(), wire.get_ref());
-    let here = ("the [[earth_plane]]", span);
-    value::needed(&wire.through, "through", "a point of the plane, [x, y, z]", here.clone(), sink);
-    value::needed(&wire.facing, "facing", "the direction from the plane to the electrodes", here, sink);
-    if wire.name.is_none() {
-        sink.assume("earth_plane.name", "plane");
-    }
-    let through = value::vector(&wire.through, "through", unit, sink).unwrap_or_else(Vec3::zeros);
-    let facing = value::direction(&wire.facing, "facing", sink).unwrap_or_else(Vec3::z);
-    let name = value::text(&wire.name, "name", sink).unwrap_or_else(|| "plane".to_owned());
-    Some(EarthPlane { name, plane: Plane { through, facing } })
 }

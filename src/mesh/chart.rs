@@ -49,6 +49,12 @@ impl Chart {
         Chart { facet, corners, normals: [Vec3::zeros(); 3], curves, merged: true, drawn: 0.0 }
     }
 
+    /// The chart moved without change of shape.
+    pub fn moved(&self, to: impl Fn(&Vec3) -> Vec3) -> Self {
+        let way = |n: &Vec3| to(n) - to(&Vec3::zeros());
+        Chart { corners: self.corners.map(|x| to(&x)), normals: self.normals.map(|n| way(&n)), ..*self }
+    }
+
     fn form<'a>(&self, surface: &'a Surface) -> &'a Form {
         &surface.patches.forms[surface.patches.of_facet[self.facet as usize] as usize]
     }

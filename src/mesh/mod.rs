@@ -36,6 +36,7 @@ pub mod stl;
 mod stl_ascii;
 pub mod stl_error;
 pub mod weld;
+pub mod whole;
 
 pub use chart::Chart;
 pub use chart::Spot;

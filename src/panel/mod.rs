@@ -5,8 +5,9 @@
 //! Symbols: as in the crate's table.
 
 mod place;
+pub mod ring;
 
-use crate::base::Plane;
+use crate::base::Images;
 use crate::base::threads;
 use crate::geom::Triangle;
 use crate::mesh::Assembly;
@@ -17,6 +18,8 @@ use crate::mesh::coarsen;
 use place::Placed;
 use std::collections::HashMap;
 use std::sync::Arc;
+
+pub use ring::Ring;
 
 /// Panels of one round; panel `p` stands at index `p` of every array.
 #[derive(Clone, Debug)]
@@ -38,8 +41,10 @@ pub struct Panels {
     pub bary: Vec<[[f64; 3]; 3]>,
     /// Rows of the matrix.
     pub n_rows: usize,
-    /// The plane at 0 V, if any.
-    pub plane: Option<Plane>,
+    /// Earth planes and mirrors.
+    pub images: Images,
+    /// How the panels repeat around an axis, if they do.
+    pub ring: Option<Ring>,
     /// The triangles over which the surface is told.
     pub charts: Arc<Vec<Chart>>,
     /// What was drawn.
@@ -87,7 +92,7 @@ pub struct Origin {
 /// One panel for each chart of what is exposed.
 ///
 /// Whole facets on recognised forms are merged; pieces of facets keep the chart of their facet.
-pub fn build(assembly: Arc<Assembly>, plane: Option<Plane>) -> Panels {
+pub fn build(assembly: Arc<Assembly>, images: impl Into<Images>) -> Panels {
     let mut whole: Vec<Vec<bool>> =
         assembly.bodies.iter().map(|b| vec![false; b.surface.welded.facets.len()]).collect();
     let mut nets = vec![None; assembly.bodies.len()];
@@ -112,7 +117,7 @@ pub fn build(assembly: Arc<Assembly>, plane: Option<Plane>) -> Panels {
         });
         origins.push(Origin { net: piece.net, body: piece.body, chart, bary: piece.bary });
     }
-    from_origins(assembly, Arc::new(charts), plane, &origins)
+    from_origins(assembly, Arc::new(charts), images.into(), &origins)
 }
 
 /// Barycentric corners of a whole chart [1].
@@ -122,11 +127,11 @@ const WHOLE: [[f64; 3]; 3] = [[1.0, 0.0, 0.0], [0.0, 1.0, 0.0], [0.0, 0.0, 1.0]]
 pub fn from_origins(
     assembly: Arc<Assembly>,
     charts: Arc<Vec<Chart>>,
-    plane: Option<Plane>,
+    images: Images,
     origins: &[Origin],
 ) -> Panels {
     let placed: Vec<Placed> =
-        threads::map(origins.len(), |k| place::place(&assembly, &charts, plane.as_ref(), &origins[k]));
+        threads::map(origins.len(), |k| place::place(&assembly, &charts, &images, &origins[k]));
     Panels {
         triangles: placed.iter().map(|placed| placed.triangle).collect(),
         offset: placed.iter().map(|placed| placed.offset).collect(),
@@ -136,7 +141,8 @@ pub fn from_origins(
         chart: origins.iter().map(|origin| origin.chart).collect(),
         bary: origins.iter().map(|origin| origin.bary).collect(),
         n_rows: assembly.rows.len(),
-        plane,
+        images,
+        ring: None,
         charts,
         assembly,
     }

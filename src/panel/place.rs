@@ -1,6 +1,7 @@
 //! From the surface over a chart to the flat panel at its mean height (DESIGN 3.6).
 
 use super::Origin;
+use crate::base::Images;
 use crate::base::Plane;
 use crate::base::Vec3;
 use crate::geom::Triangle;
@@ -33,7 +34,7 @@ pub(super) fn in_chart(bary: &[[f64; 3]; 3], w: [f64; 3]) -> [f64; 3] {
 /// height of the surface over it, its corners along the normals there, so that it widens on a bulge
 /// as the surface does and panels of one height close.  Sphere of 320, 1,280, 2,420 regular facets, error of
 /// the capacitance: as drawn −1.1e-2, −2.9e-3, −1.5e-3, placed so: see `tests/it/accuracy.rs`.
-pub(super) fn place(assembly: &Assembly, charts: &[Chart], plane: Option<&Plane>, origin: &Origin) -> Placed {
+pub(super) fn place(assembly: &Assembly, charts: &[Chart], images: &Images, origin: &Origin) -> Placed {
     let surface = &assembly.bodies[origin.body as usize].surface;
     let chart = &charts[origin.chart as usize];
     let spots = origin.bary.map(|w| chart.spot(surface, w));
@@ -62,10 +63,10 @@ pub(super) fn place(assembly: &Assembly, charts: &[Chart], plane: Option<&Plane>
         corners[side] += shift;
         corners[(side + 1) % 3] += shift;
     }
-    // A bulge through the earth plane is no bulge: the facets are too coarse for the gap there.
-    if plane.is_some_and(|plane| 0.0 < drawn && corners.iter().any(|x| plane.height(x) <= 0.0)) {
-        let flat = Triangle::new(origin.bary.map(|w| base.at(w)));
-        return Placed { triangle: flat, offset: 0.0, drawn: 0.0 };
+    // A bulge through a plane is no bulge: the facets are too coarse for the gap there.
+    let flat = origin.bary.map(|w| base.at(w));
+    if 0.0 < drawn && crosses(images, &flat, &corners) {
+        return Placed { triangle: Triangle::new(flat), offset: 0.0, drawn: 0.0 };
     }
     // Beside an arc the panel follows its surface no better than its side follows the arc.
     let offset = if offset.abs() < rise { rise } else { offset };
@@ -92,3 +93,17 @@ fn side_shift(
     // The mean of a parabola is two thirds of its height.
     Some((off - n * off.dot(&n)) * (2.0 / 3.0))
 }
+
+/// Whether corners come to lie at or behind a plane at 0 V, or behind an even mirror from the front of it:
+/// where a body meets an even mirror its corners stay in the plane up to rounding.
+fn crosses(images: &Images, flat: &[Vec3; 3], placed: &[Vec3; 3]) -> bool {
+    let size = (flat[1] - flat[0]).norm().max((flat[2] - flat[0]).norm());
+    let through = |plane: &Plane, least: f64| {
+        (0..3).any(|k| least * size < plane.height(&flat[k]) && plane.height(&placed[k]) <= 0.0)
+    };
+    images.grounded().any(|grounded| through(&grounded.plane, f64::NEG_INFINITY))
+        || images.even().any(|plane| through(plane, IN_PLANE))
+}
+
+/// Height of a corner over an even mirror up to which it lies in it, in sizes of the panel [1].
+const IN_PLANE: f64 = 1e-9;

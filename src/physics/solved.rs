@@ -33,6 +33,9 @@ const RIM_SHARE: f64 = 0.3;
 const ROUNDING: f64 = 10.0;
 
 /// A solved round.
+///
+/// Charges and capacitances are those of electrodes with their copies across even mirrors; densities and
+/// residuals those of the panels.
 #[derive(Clone, Debug)]
 pub struct Solved {
     /// The panels.
@@ -45,7 +48,7 @@ pub struct Solved {
     pub residuals: Residuals,
     /// Weighted gradients of what they miss.
     pub estimate: Estimate,
-    /// Distance of each panel to another conductor or the earth plane, where under its length [m].
+    /// Distance of each panel to another conductor or a plane at 0 V, where under its length [m].
     pub gaps: Vec<f64>,
     /// Round rims of sheets.
     pub rims: Rims,
@@ -81,11 +84,13 @@ pub fn solve(panels: Panels, eps_r: f64) -> Result<Solved, SolveError> {
     let sources = Sources::build(&panels);
     let charges = unit::solve(&panels, &sources)?;
     let residuals = unit::residuals(&panels, &sources, &charges);
-    let capacitance = capacitance::corrected(&panels, &charges, &residuals, eps_r);
+    // Electrodes hold the charge of their copies across even mirrors, too.
+    let eps_whole = eps_r * panels.images.whole_over_part();
+    let capacitance = capacitance::corrected(&panels, &charges, &residuals, eps_whole);
     let gaps = gap::gaps(&panels);
-    let estimate = estimate::estimate(&panels, &residuals, &gaps, eps_r);
+    let estimate = estimate::estimate(&panels, &residuals, &gaps, eps_whole);
     let rims = rim::rims(&panels, &charges);
-    let (n, eps) = (panels.n_rows, permittivity(eps_r));
+    let (n, eps) = (panels.n_rows, permittivity(eps_whole));
     let gain = |i: usize, j: usize| eps * rims.change(&unit_weight(i, n), &unit_weight(j, n)).0;
     let entry = |i: usize, j: usize| capacitance.corrected[i][j] + gain(i, j);
     let matrix = (0..n).map(|i| (0..n).map(|j| entry(i, j)).collect()).collect();
@@ -103,14 +108,25 @@ impl Solved {
         self.panels.n_rows
     }
 
+    /// Permittivity times the count of copies of the drawn part in the whole, itself included [F/m]: from
+    /// `density × area` of the panels to the charge of electrodes with their copies across even mirrors.
+    pub fn permittivity_of_whole(&self) -> f64 {
+        permittivity(self.eps_whole())
+    }
+
+    fn eps_whole(&self) -> f64 {
+        self.eps_r * self.panels.images.whole_over_part()
+    }
+
     /// Bar of the combination `uᵀ C v`, by its own weights [F × units of u and v].
     pub fn bar(&self, u: &[f64], v: &[f64]) -> Bar {
-        let (_, faceting) = faceting::change(&self.panels, &self.charges, &self.gaps, self.eps_r, [u, v]);
+        let (_, faceting) =
+            faceting::change(&self.panels, &self.charges, &self.gaps, self.eps_whole(), [u, v]);
         let size = |i: usize, j: usize| (u[i] * self.matrix[i][j] * v[j]).abs();
         let magnitude: f64 = (0..u.len()).map(|i| (0..v.len()).map(|j| size(i, j)).sum::<f64>()).sum();
         Bar {
             discretisation: KAPPA * self.estimate.total(u, v),
-            faceting: faceting + RIM_SHARE * permittivity(self.eps_r) * self.rims.change(u, v).1,
+            faceting: faceting + RIM_SHARE * self.permittivity_of_whole() * self.rims.change(u, v).1,
             solver: ROUNDING * f64::EPSILON / self.charges.pivot_ratio * magnitude,
         }
     }
@@ -118,8 +134,8 @@ impl Solved {
     /// First-order share of the facets and of straight rims in `uᵀ C v`: rebuilt minus flat [F × units of u
     /// and v].
     pub fn faceting(&self, u: &[f64], v: &[f64]) -> f64 {
-        let facets = faceting::change(&self.panels, &self.charges, &self.gaps, self.eps_r, [u, v]).0;
-        facets + permittivity(self.eps_r) * self.rims.change(u, v).0
+        let facets = faceting::change(&self.panels, &self.charges, &self.gaps, self.eps_whole(), [u, v]).0;
+        facets + self.permittivity_of_whole() * self.rims.change(u, v).0
     }
 
     /// Bars of the matrix entries and of the row sums [F].
@@ -129,6 +145,12 @@ impl Solved {
         let row = |i: usize| -> Vec<Bar> {
             (0..n).map(|j| self.bar(&unit_weight(i, n), &unit_weight(j, n))).collect()
         };
-        ((0..n).map(row).collect(), (0..n).map(|i| self.bar(&unit_weight(i, n), &ones)).collect())
+        let first = self.panels.first_rows();
+        let (mut entries, mut earth) = (vec![vec![Bar::default(); n]; n], vec![Bar::default(); n]);
+        for i in first {
+            entries[i] = row(i);
+            earth[i] = self.bar(&unit_weight(i, n), &ones);
+        }
+        (self.panels.turned_entries(entries), self.panels.turned_rows(earth))
     }
 }

@@ -273,8 +273,16 @@ fn reach(panels: &Panels, edges: &[Edge], own: usize, along: f64, at: &Vec3) -> 
             least = least.min((distance::point_of_triangle(tri, at) - at).norm());
         }
     }
-    if let Some(plane) = &panels.plane {
-        least = least.min(plane.height(at).abs());
+    for grounded in panels.images.grounded() {
+        least = least.min(grounded.plane.height(at).abs());
+    }
+    for mirror in panels.images.even() {
+        // Through a mirror that it meets an edge just goes on; else its copy stands behind.
+        let ends = edge.segments.iter().flat_map(|s| s.ends);
+        let lowest = ends.map(|x| mirror.height(&x).abs()).fold(f64::INFINITY, f64::min);
+        if ON_EDGE * edge.length() < lowest {
+            least = least.min(2.0 * mirror.height(at).abs());
+        }
     }
     least
 }

@@ -64,6 +64,13 @@ pub struct Record {
     pub potential_coefficients_per_farad: Matrix,
     /// Its bars [1/F].
     pub potential_coefficients_bar_per_farad: Matrix,
+    /// How the electrodes of all matrices, charges and energies stand to the part that is drawn.
+    #[serde(default)]
+    pub part_of_whole: PartOfWhole,
+    /// `capacitance_farad` over the factor of `part_of_whole`: of the part that is drawn, in the field of the
+    /// whole [F].
+    #[serde(default)]
+    pub part_capacitance_farad: Matrix,
     /// What was checked at run time.
     pub checks: Vec<Check>,
     /// What was noticed.
@@ -83,6 +90,21 @@ pub struct Record {
     pub budget: Budget,
     /// What it took.
     pub effort: Effort,
+}
+
+/// How the whole assembly stands to the part in front of the mirrors.
+#[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
+pub struct PartOfWhole {
+    /// Charge of an electrode over that of its drawn part: 2 for each even mirror [1].
+    pub factor: f64,
+    /// The rule in words; empty without mirrors.
+    pub text: String,
+}
+
+impl Default for PartOfWhole {
+    fn default() -> Self {
+        PartOfWhole { factor: 1.0, text: String::new() }
+    }
 }
 
 /// Name and version of the program.
@@ -428,7 +450,7 @@ pub struct Effort {
     pub unknowns: usize,
     /// Rounds.
     pub rounds: usize,
-    /// `dense`.
+    /// `dense`, or `dense blocks of a ring` where copies repeat all round an axis.
     pub method: String,
     /// Seconds by phase [s].
     pub seconds: BTreeMap<String, f64>,

@@ -220,6 +220,10 @@ pub fn misfit(record: &Record) -> Option<&'static str> {
         ("earth_share", record.earth_share.len() == n),
         ("potential_coefficients_per_farad", square(&record.potential_coefficients_per_farad)),
         ("potential_coefficients_bar_per_farad", square(&record.potential_coefficients_bar_per_farad)),
+        (
+            "part_capacitance_farad",
+            record.part_capacitance_farad.is_empty() || square(&record.part_capacitance_farad),
+        ),
         ("looks", looks_fit),
         ("potentials_volt", cases(&|case| by_row(&case.potentials_volt))),
         ("potentials_bar_volt", cases(&|case| by_row(&case.potentials_bar_volt))),

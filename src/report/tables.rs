@@ -11,6 +11,7 @@ use crate::report::digits;
 use crate::report::form::Form;
 use crate::report::form::REFERENCE;
 use crate::report::form::clean;
+use crate::report::form::part_text;
 use crate::report::form::title;
 use std::collections::BTreeMap;
 use std::f64::consts::SQRT_2;
@@ -116,6 +117,7 @@ pub fn head_text(record: &Record) -> String {
         let codes: Vec<String> = record.verdict.codes.iter().map(i32::to_string).collect();
         text += &format!("  exit codes that hold: {}\n", codes.join(", "));
     }
+    let part = part_text(record).map_or(String::new(), |text| format!("Part and whole\n  {text}\n\n"));
     let (asked, reached) = (record.accuracy.asked, record.accuracy.reached);
     let (asked, reached) = (digits::percent(asked, false), digits::percent(reached, false));
     let maxima = record.accuracy.max_field_asked.zip(record.accuracy.max_field_reached);
@@ -126,7 +128,7 @@ pub fn head_text(record: &Record) -> String {
     text + &format!(
         "  bar of the capacitances: asked {asked}, reached {reached}\n{maxima}  case sha256 {}\n\n",
         clean(&record.case.sha256)
-    )
+    ) + &part
 }
 
 /// The caution of a floating electrode with its potential in one voltage case.

@@ -19,6 +19,7 @@ use crate::mesh::size;
 use crate::mesh::smooth;
 use crate::mesh::stl;
 use crate::mesh::weld;
+use crate::mesh::whole;
 
 /// Facets of one file, solid by solid, in the unit of the file.
 pub(super) struct Read {
@@ -58,10 +59,26 @@ pub(super) fn bodies(case: &Case, shapes: &Shapes) -> Result<(Vec<Body>, Vec<Fin
     let read = read_all(shapes)?;
     let mut findings: Vec<Finding> = read.iter().flat_map(|read| read.findings.clone()).collect();
     let mut bodies = Vec::new();
+    let mut drawn = None;
     for electrode in &case.electrodes {
-        match body(case, electrode, &read) {
+        // The first of all copies is the one that is drawn; the others repeat no note of it.
+        let repeated = electrode.copy.as_ref().is_some_and(|copy| 0 < copy.number);
+        if !repeated {
+            drawn = match accepted(case, electrode, &read) {
+                Ok((surface, more)) => {
+                    findings.extend(more);
+                    Some(surface)
+                }
+                Err(more) => {
+                    findings.extend(more);
+                    None
+                }
+            };
+        }
+        let Some(surface) = &drawn else { continue };
+        match body(case, electrode, surface) {
             Ok((body, more)) => {
-                findings.extend(more);
+                findings.extend(more.into_iter().filter(|_| !repeated));
                 bodies.push(body);
             }
             Err(more) => findings.extend(more),
@@ -74,7 +91,12 @@ pub(super) fn bodies(case: &Case, shapes: &Shapes) -> Result<(Vec<Body>, Vec<Fin
     }
 }
 
-fn body(case: &Case, electrode: &Electrode, read: &[Read]) -> Result<(Body, Vec<Finding>), Vec<Finding>> {
+/// The surface of an electrode as it is drawn, in place.
+fn accepted(
+    case: &Case,
+    electrode: &Electrode,
+    read: &[Read],
+) -> Result<(Surface, Vec<Finding>), Vec<Finding>> {
     let solids = electrode.files.iter().flat_map(|k| &read[*k].solids);
     let chosen: Vec<Vec<[Vec3; 3]>> = match &electrode.shell {
         None => solids.cloned().collect(),
@@ -94,6 +116,18 @@ fn body(case: &Case, electrode: &Electrode, read: &[Read]) -> Result<(Body, Vec<
             return Err(findings);
         }
     }
+    Ok((surface, findings))
+}
+
+/// The body of an electrode from its surface as drawn: moved where it is a copy, joined to what mirrors make of
+/// it, its smooth patches found.
+fn body(case: &Case, electrode: &Electrode, drawn: &Surface) -> Result<(Body, Vec<Finding>), Vec<Finding>> {
+    let mut surface = drawn.clone();
+    if let Some(copy) = electrode.copy.as_ref().filter(|copy| 0 < copy.number) {
+        let motion = copy.motion.times(copy.number);
+        surface.welded.points.iter_mut().for_each(|x| *x = motion.point(x));
+    }
+    let (surface, mut findings) = whole::whole(surface, &case.images, &electrode.name)?;
     let surface = smoothed(surface, electrode, &mut findings);
     Ok((Body { name: electrode.name.clone(), surface }, findings))
 }

@@ -6,8 +6,10 @@
 
 mod bodies;
 mod checks;
+mod copies;
 mod edges;
 mod inspect;
+mod part;
 mod prove;
 mod prove_shapes;
 mod record;

@@ -150,7 +150,7 @@ fn line(name: &str, source: &'static str, [exact, found, bar]: [f64; 3], widest:
 fn solved(bodies: Vec<Vec<[Vec3; 3]>>, sheet: bool, plane: Option<Plane>) -> Result<Solved, StudyError> {
     let accepted: Result<Vec<Body>, StudyError> =
         bodies.iter().enumerate().map(|(n, facets)| body(facets, sheet, &format!("body {n}"))).collect();
-    let assembly = assembly::expose(accepted?, &[], plane.as_ref()).map_err(StudyError::Refused)?;
+    let assembly = assembly::expose(accepted?, &[], plane).map_err(StudyError::Refused)?;
     let start = adapt::start(FIRST_PANELS, None, panel::build(Arc::new(assembly), plane));
     let limits = Limits { max_panels: Some(MOST_PANELS), time: None, memory: f64::INFINITY };
     let demand = Demand { capacitance: DEMAND, field: None };

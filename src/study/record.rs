@@ -3,6 +3,7 @@
 use super::Outcome;
 use super::StudyError;
 use super::checks;
+use super::part;
 use super::state::States;
 use super::voltage;
 use crate::adapt::Finished;
@@ -18,7 +19,6 @@ use crate::case::SurfaceKind;
 use crate::case::machine;
 use crate::circuit;
 use crate::mesh::Net;
-use crate::mesh::weld;
 use crate::operator::Sources;
 use crate::physics::field;
 use crate::physics::look;
@@ -98,6 +98,8 @@ pub(super) fn outcome(
         earth_share: earth.iter().enumerate().map(|(i, c)| c / solved.matrix[i][i]).collect(),
         mutual_farad: circuit::mutual(&solved.matrix),
         mutual_bar_farad: without_diagonal(&bar_matrix),
+        part_of_whole: part::part_of_whole(case),
+        part_capacitance_farad: part::capacitance(solved),
         capacitance_farad: solved.matrix.clone(),
         capacitance_bar_farad: bar_matrix,
         earth_bar_farad: totals(&earth_bars),
@@ -144,13 +146,17 @@ fn rows(case: &Case, solved: &Solved) -> Vec<RowInfo> {
     solved.panels.assembly.rows.iter().map(info).collect()
 }
 
-fn findings(case: &Case, solved: &Solved, more: &[Finding]) -> Vec<FindingRecord> {
-    let stored = |finding: &Finding| FindingRecord {
+/// A finding as it is stored.
+pub(super) fn stored(finding: &Finding) -> FindingRecord {
+    FindingRecord {
         severity: finding.severity.word().to_owned(),
         code: finding.code.to_owned(),
         text: finding.text.clone(),
         where_metre: finding.place.map(|p| [p.x, p.y, p.z]),
-    };
+    }
+}
+
+fn findings(case: &Case, solved: &Solved, more: &[Finding]) -> Vec<FindingRecord> {
     let mut all: Vec<FindingRecord> = solved.panels.assembly.findings.iter().map(stored).collect();
     all.extend(solved_findings(case, solved).iter().map(stored));
     all.extend(more.iter().map(stored));
@@ -216,8 +222,7 @@ fn parts(case: &Case, solved: &Solved) -> Vec<Part> {
     let panels = &solved.panels;
     let part = |(k, body): (usize, &crate::mesh::Body)| {
         let held: Vec<usize> = (0..panels.len()).filter(|p| panels.body[*p] as usize == k).collect();
-        let (lo, hi) = weld::bounds(&body.surface.welded.points);
-        let size = hi - lo;
+        let (facets, size) = part::drawn(&body.surface.welded, &panels.images);
         let surface = match case.electrodes[k].surface {
             SurfaceKind::Rebuilt => "rebuilt",
             SurfaceKind::AsDrawn => "as_drawn",
@@ -226,7 +231,7 @@ fn parts(case: &Case, solved: &Solved) -> Vec<Part> {
             name: body.name.clone(),
             kind: "electrode".to_owned(),
             surface: surface.to_owned(),
-            facets: body.surface.welded.facets.len(),
+            facets,
             panels: held.len(),
             area_m2: held.iter().map(|p| panels.triangles[*p].area()).sum(),
             size_metre: [size.x, size.y, size.z],
@@ -280,7 +285,8 @@ fn effort(finished: &Finished) -> Effort {
         panels,
         unknowns: panels,
         rounds: finished.rounds.len(),
-        method: "dense".to_owned(),
+        method: if 1 < finished.solved.panels.copies() { "dense blocks of a ring" } else { "dense" }
+            .to_owned(),
         seconds: BTreeMap::new(),
         peak_memory_bytes: machine::peak_memory().map_or(0, |bytes| bytes as u64),
         threads: threads::count(),
@@ -405,6 +411,9 @@ pub(super) fn medium_name(medium: look::Medium, solved: &Solved) -> String {
     match medium {
         look::Medium::Surroundings => "surroundings".to_owned(),
         look::Medium::BehindEarth => "behind earth".to_owned(),
+        look::Medium::Opposite(body) => {
+            format!("opposite copy of {}", solved.panels.assembly.bodies[body].name)
+        }
         look::Medium::Metal(body) => solved.panels.assembly.bodies[body].name.clone(),
     }
 }

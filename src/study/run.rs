@@ -4,6 +4,7 @@ use super::Event;
 use super::Outcome;
 use super::StudyError;
 use super::bodies;
+use super::copies;
 use super::record;
 use super::state;
 use super::state::States;
@@ -22,6 +23,7 @@ use crate::mesh::Assembly;
 use crate::mesh::assembly;
 use crate::operator::dense;
 use crate::panel;
+use crate::panel::Panels;
 use crate::physics::capacitance::Matrix;
 use std::collections::BTreeMap;
 use std::sync::Arc;
@@ -55,14 +57,16 @@ fn run_here(case: &Case, shapes: &Shapes, progress: &(dyn Fn(&Event) + Sync)) ->
         clock = Instant::now();
     };
     progress(&Event::Phase("inspect"));
-    let assembly = Arc::new(assemble(case, shapes)?);
+    let assembly = assemble(case, shapes)?;
     let states = state::states(case, &assembly).map_err(StudyError::Refused)?;
+    let (panels, note) = copies::arranged(case, panel::build(Arc::new(assembly), &case.images));
     lap(&mut seconds, "inspect");
     progress(&Event::Phase("refine"));
-    let finished = refine(case, assembly, &states, progress)?;
+    let finished = refine(case, panels, &states, progress)?;
     lap(&mut seconds, "refine");
     progress(&Event::Phase("results"));
-    let outcome = record::outcome(case, shapes, &finished, &states)?;
+    let mut outcome = record::outcome(case, shapes, &finished, &states)?;
+    outcome.record.findings.extend(note.iter().map(record::stored));
     lap(&mut seconds, "results");
     Ok(with_seconds(outcome, seconds))
 }
@@ -78,8 +82,7 @@ fn with_seconds(mut outcome: Outcome, seconds: Seconds) -> Outcome {
 /// [`StudyError::Refused`] with all findings.
 pub(super) fn assemble(case: &Case, shapes: &Shapes) -> Result<Assembly, StudyError> {
     let (bodies, mut findings) = bodies::bodies(case, shapes).map_err(StudyError::Refused)?;
-    let plane = case.earth_plane.as_ref().map(|earth| earth.plane);
-    match assembly::expose(bodies, &case.bonds, plane.as_ref()) {
+    match assembly::expose(bodies, &case.bonds, &case.images) {
         Ok(assembly) => {
             findings.extend(assembly.findings);
             if assembly.rows.is_empty() {
@@ -105,18 +108,17 @@ pub(super) fn memory_limit(case: &Case) -> f64 {
 
 fn refine(
     case: &Case,
-    assembly: Arc<Assembly>,
+    panels: Panels,
     states: &[States],
     progress: &(dyn Fn(&Event) + Sync),
 ) -> Result<Finished, StudyError> {
-    let plane = case.earth_plane.as_ref().map(|earth| earth.plane);
-    let start = adapt::start(FIRST_PANELS, case.accuracy.max_panels, panel::build(assembly, plane));
+    let start = adapt::start(FIRST_PANELS, case.accuracy.max_panels, panels);
     let limits = Limits {
         max_panels: case.accuracy.max_panels,
         time: case.accuracy.time_limit,
         memory: memory_limit(case),
     };
-    let needed = dense::bytes(start.len(), start.n_rows);
+    let needed = dense::bytes(start.len(), start.n_rows, start.copies());
     if limits.memory < needed {
         return Err(StudyError::Memory {
             panels: start.len(),

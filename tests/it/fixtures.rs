@@ -52,6 +52,8 @@ pub(crate) fn record() -> Record {
         potential_coefficients_per_farad: circuit::inverse(&c).unwrap(),
         potential_coefficients_bar_per_farad: flat(2.4e8),
         capacitance_bar_farad: flat(7.3e-15),
+        part_of_whole: PartOfWhole::default(),
+        part_capacitance_farad: c.clone(),
         capacitance_farad: c,
         checks: vec![Check { name: "asymmetry [1]".into(), value: 2.1e-7, limit: 1e-4, pass: true }],
         findings: findings(),

@@ -6,12 +6,13 @@ use amberskin::adapt::Aim;
 use amberskin::adapt::Demand;
 use amberskin::adapt::Finished;
 use amberskin::adapt::Limits;
-use amberskin::base::Plane;
+use amberskin::base::Images;
 use amberskin::mesh::Assembly;
 use amberskin::mesh::Body;
 use amberskin::mesh::accept;
 use amberskin::mesh::assembly;
 use amberskin::mesh::smooth;
+use amberskin::mesh::whole;
 use amberskin::panel;
 use amberskin::physics::capacitance::Matrix;
 use amberskin::physics::solved::Bar;
@@ -41,13 +42,15 @@ fn named(facets: impl IntoIterator<Item = Vec<Facet>>, sheet: bool) -> Vec<TestB
 }
 
 /// Accepted, smoothed and exposed.
-pub(crate) fn assembled(bodies: &[TestBody], bonds: &[Vec<String>], plane: Option<&Plane>) -> Assembly {
+pub(crate) fn assembled(bodies: &[TestBody], bonds: &[Vec<String>], images: impl Into<Images>) -> Assembly {
+    let images = images.into();
     let accepted = |body: &TestBody| {
         let (surface, _) = accept::body(&body.facets, body.sheet, &body.name).unwrap();
+        let (surface, _) = whole::whole(surface, &images, &body.name).unwrap();
         let (surface, _) = smooth::rebuild(surface, smooth::CREASE_ANGLE);
         Body { name: body.name.clone(), surface }
     };
-    assembly::expose(bodies.iter().map(accepted).collect(), bonds, plane).unwrap()
+    assembly::expose(bodies.iter().map(accepted).collect(), bonds, images).unwrap()
 }
 
 /// What is asked of a solution.
@@ -60,16 +63,17 @@ pub(crate) struct Asked {
 }
 
 /// Refined until what is asked is reached.
-pub(crate) fn refined(assembly: Assembly, plane: Option<Plane>, asked: Asked) -> Finished {
-    let start = adapt::start(FIRST_PANELS, None, panel::build(Arc::new(assembly), plane));
+pub(crate) fn refined(assembly: Assembly, images: impl Into<Images>, asked: Asked) -> Finished {
+    let start = adapt::start(FIRST_PANELS, None, panel::build(Arc::new(assembly), images));
     let limits = Limits { max_panels: Some(asked.max_panels), time: None, memory: 4e9 };
     adapt::run(start, 1.0, Demand { capacitance: asked.demand, field: None }, &limits, &|_| {}).unwrap()
 }
 
 /// Refined for capacitances of 0.5 % and for the maxima at row potentials `v`.
-pub(crate) fn aimed(bodies: &[TestBody], plane: Option<Plane>, v: &[f64], max_field: f64) -> Finished {
-    let assembly = assembled(bodies, &[], plane.as_ref());
-    let start = adapt::start(FIRST_PANELS, None, panel::build(Arc::new(assembly), plane));
+pub(crate) fn aimed(bodies: &[TestBody], images: impl Into<Images>, v: &[f64], max_field: f64) -> Finished {
+    let images = images.into();
+    let assembly = assembled(bodies, &[], &images);
+    let start = adapt::start(FIRST_PANELS, None, panel::build(Arc::new(assembly), &images));
     let limits = Limits { max_panels: Some(6000), time: None, memory: 4e9 };
     let potentials = |_: &Matrix| vec![v.to_vec()];
     let aim = Aim { max_field, potentials: &potentials };
@@ -77,8 +81,9 @@ pub(crate) fn aimed(bodies: &[TestBody], plane: Option<Plane>, v: &[f64], max_fi
 }
 
 /// Bodies without bonds, refined until what is asked is reached.
-pub(crate) fn solve(bodies: &[TestBody], plane: Option<Plane>, asked: Asked) -> Solved {
-    refined(assembled(bodies, &[], plane.as_ref()), plane, asked).solved
+pub(crate) fn solve(bodies: &[TestBody], images: impl Into<Images>, asked: Asked) -> Solved {
+    let images = images.into();
+    refined(assembled(bodies, &[], &images), images, asked).solved
 }
 
 /// `uᵀ C v` and its bar [F × units of u and v].
