@@ -42,6 +42,13 @@ fn halves(origin: &Origin, edge: usize) -> [Origin; 2] {
 
 /// Edge of panel `p` along which the surface departs most from the straight side, and by how much [m].
 pub(super) fn most_bent(panels: &Panels, p: usize) -> (usize, f64) {
+    let bends = bends(panels, p);
+    let most = (1..3).fold(0, |best, k| if bends[best] < bends[k] { k } else { best });
+    (most, bends[most])
+}
+
+/// Departure of the surface from the middle of each side of panel `p` [m].
+fn bends(panels: &Panels, p: usize) -> [f64; 3] {
     let middle = |k: usize| {
         let mut w = [0.5; 3];
         w[(k + 2) % 3] = 0.0;
@@ -50,9 +57,7 @@ pub(super) fn most_bent(panels: &Panels, p: usize) -> (usize, f64) {
     let corner = |k: usize| [0, 1, 2].map(|c| if c == k { 1.0 } else { 0.0 });
     let ends = [0, 1, 2].map(|k| panels.spot(p, corner(k)).point);
     let bend = |k: usize| (panels.spot(p, middle(k)).point - (ends[k] + ends[(k + 1) % 3]) * 0.5).norm();
-    let bends = [0, 1, 2].map(bend);
-    let most = (1..3).fold(0, |best, k| if bends[best] < bends[k] { k } else { best });
-    (most, bends[most])
+    [0, 1, 2].map(bend)
 }
 
 /// Largest departure of the surface from a side of a panel, in heights of the panel [1].
@@ -61,12 +66,12 @@ pub(super) fn most_bent(panels: &Panels, p: usize) -> (usize, f64) {
 /// the chord of the other two.  Halving the height doubles the ratio, so at most 0.3 is met.
 const MOST_BENT: f64 = 0.15;
 
-/// The edge of panel `p` that must be cut for the panel to follow its surface at all, if there is one.
+/// The longest edge of panel `p` if it must be cut for the panel to follow its surface at all.
 pub(super) fn overbent(panels: &Panels, p: usize) -> Option<usize> {
-    let (edge, bend) = most_bent(panels, p);
     let tri = &panels.triangles[p];
+    let edge = longest(tri);
     let height = tri.cross().norm() / tri.longest_edge().max(f64::MIN_POSITIVE);
-    (MOST_BENT * height < bend).then_some(edge)
+    (MOST_BENT * height < bends(panels, p)[edge]).then_some(edge)
 }
 
 /// The longest edge of a triangle.

@@ -24,12 +24,16 @@ pub fn start(count: usize, most: Option<usize>, mut panels: Panels) -> Panels {
         let gaps = gap::gaps(&panels);
         let mut cuts: Vec<(usize, usize)> = Vec::new();
         for (p, gap) in gaps.iter().enumerate() {
-            let (edge, bend) = split::most_bent(&panels, p);
-            if let Some(edge) = split::overbent(&panels, p) {
+            let (bent, bend) = split::most_bent(&panels, p);
+            let (turned, turn) = most_turned(&panels, p);
+            // Drawn facets of free surfaces are told by their normals as well as they can be.
+            let exact = panels.is_exact(p);
+            if let Some(edge) = split::overbent(&panels, p).filter(|_| exact) {
                 cuts.push((p, edge));
-            } else if 0.0 < bend && (GAP_SHARE * gap < 2.0 * lift(&panels, p) || MOST_TURN < turn(&panels, p))
-            {
-                cuts.push((p, edge));
+            } else if exact && MOST_TURN < turn {
+                cuts.push((p, turned));
+            } else if 0.0 < bend && GAP_SHARE * gap < 2.0 * lift(&panels, p) {
+                cuts.push((p, bent));
             } else if held[panels.body[p] as usize] < count {
                 cuts.push((p, split::longest(&panels.triangles[p])));
             }
@@ -52,10 +56,14 @@ fn lift(panels: &Panels, p: usize) -> f64 {
     heights.into_iter().fold(0.0, f64::max)
 }
 
-/// Largest angle between the normals of the surface at the corners of panel `p` [rad].
-fn turn(panels: &Panels, p: usize) -> f64 {
+/// The edge of panel `p` between whose ends the normal of the surface turns most, and that turn [rad].
+///
+/// On a saddle the normal turns along lines that do not bend, so bends alone do not tell.
+fn most_turned(panels: &Panels, p: usize) -> (usize, f64) {
     let corner = |k: usize| [0, 1, 2].map(|c| if c == k { 1.0 } else { 0.0 });
     let n = [0, 1, 2].map(|k| panels.spot(p, corner(k)).normal);
-    let between = |a: usize, b: usize| n[a].cross(&n[b]).norm().atan2(n[a].dot(&n[b]));
-    between(0, 1).max(between(1, 2)).max(between(2, 0))
+    let turn = |k: usize| n[k].cross(&n[(k + 1) % 3]).norm().atan2(n[k].dot(&n[(k + 1) % 3]));
+    let turns = [0, 1, 2].map(turn);
+    let most = (1..3).fold(0, |best, k| if turns[best] < turns[k] { k } else { best });
+    (most, turns[most])
 }

@@ -106,13 +106,19 @@ pub(super) fn memory_limit(case: &Case) -> f64 {
     case.accuracy.memory_limit.unwrap_or_else(free)
 }
 
+/// Most panels of the first round: what is allowed, and what half the memory holds.
+fn most_at_first(case: &Case) -> usize {
+    let held = (0.5 * memory_limit(case) / 8.0).sqrt();
+    case.accuracy.max_panels.unwrap_or(usize::MAX).min(held as usize)
+}
+
 fn refine(
     case: &Case,
     panels: Panels,
     states: &[States],
     progress: &(dyn Fn(&Event) + Sync),
 ) -> Result<Finished, StudyError> {
-    let start = adapt::start(FIRST_PANELS, case.accuracy.max_panels, panels);
+    let start = adapt::start(FIRST_PANELS, Some(most_at_first(case)), panels);
     let limits = Limits {
         max_panels: case.accuracy.max_panels,
         time: case.accuracy.time_limit,
