@@ -79,8 +79,8 @@ impl Chart {
         self.curves[k].is_some() || self.curves[(k + 2) % 3].is_some()
     }
 
-    /// Angle between the sides at corner `k`, arcs along their tangents [rad].
-    pub fn angle_at(&self, surface: &Surface, k: usize) -> f64 {
+    /// Angle inside at corner `k` between its sides, arcs along their tangents, positive about `n` [rad].
+    pub fn angle_at(&self, surface: &Surface, k: usize, n: &Vec3) -> f64 {
         let leaving = |side: usize| {
             let (a, b) = (self.corners[k], self.corners[(k + 1) % 3]);
             let other = if side == k { b } else { self.corners[(k + 2) % 3] };
@@ -93,7 +93,7 @@ impl Chart {
             }
         };
         let (p, q) = (leaving(k), leaving((k + 2) % 3));
-        p.cross(&q).norm().atan2(p.dot(&q))
+        p.cross(&q).dot(n).atan2(p.dot(&q))
     }
 
     /// The flat triangle at `w`, bowed where sides are arcs: on side `k` the arc, inside its offset from the chord

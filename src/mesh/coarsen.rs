@@ -8,6 +8,7 @@ use crate::mesh::Surface;
 use crate::mesh::borders::Curve;
 use crate::mesh::form::Form;
 use std::collections::BTreeMap;
+use std::f64::consts::PI;
 
 /// Most that the surface may turn between two corners of a chart [rad]: 50°.
 const MOST_TURN: f64 = 0.87;
@@ -268,6 +269,11 @@ impl<'a> Net<'a> {
             }
         }
         for k in 0..3 {
+            // A hollow arc may leave no more than a cusp of the corner at its end.
+            let angle = if chart.is_beside_arc(k) { chart.angle_at(self.surface, k, &n) } else { PI };
+            if -MOST_OPEN < angle && angle < LEAST_ANGLE {
+                return false;
+            }
             let (a, b) = (k, (k + 1) % 3);
             if normals[a].dot(&normals[b]) < MOST_TURN.cos() {
                 return false;
@@ -347,7 +353,7 @@ impl<'a> Net<'a> {
             p.cross(&q).norm().atan2(p.dot(&q))
         };
         let joined = self.at[c as usize].iter().any(|h| self.facets[*h as usize].contains(&d));
-        if angle(c) + angle(d) <= std::f64::consts::PI * (1.0 + 1e-9) || joined {
+        if angle(c) + angle(d) <= PI * (1.0 + 1e-9) || joined {
             return false;
         }
         let [first, second] = [[a, d, c], [d, b, c]];
@@ -388,9 +394,13 @@ impl<'a> Net<'a> {
 /// and panels there come to nothing.
 const MOST_OPEN: f64 = 2.44;
 
+/// Least angle between the sides of a chart at a corner beside an arc [rad]: 14°.
+const LEAST_ANGLE: f64 = 0.25;
+
 /// Adds a chart, cut from its widest corner to the middle of the side across where arcs open that corner too far.
 fn opened(surface: &Surface, chart: Chart, found: &mut Vec<Chart>) {
-    let angle = |k: usize| if chart.is_beside_arc(k) { chart.angle_at(surface, k) } else { 0.0 };
+    let n = chart.flat().normal();
+    let angle = |k: usize| if chart.is_beside_arc(k) { chart.angle_at(surface, k, &n).abs() } else { 0.0 };
     let angles = [0, 1, 2].map(angle);
     let widest = (1..3).fold(0, |best, k| if angles[best] < angles[k] { k } else { best });
     if angles[widest] <= MOST_OPEN {
