@@ -7,6 +7,7 @@
 //! patch, so it marks the same ones; it moves the mean by 0.002 to 0.15 %, while the fitted maximum was off by
 //! 0.3 to 2.1 %, which is variation over the patch.  So panels are cut until fits over different patches agree.
 
+use super::split;
 use crate::geom::distance;
 use crate::panel::Panels;
 use crate::physics::capacitance::Matrix;
@@ -54,11 +55,17 @@ const AREA_ORDER: f64 = 1.2;
 const HALVINGS: usize = 3;
 
 /// Panels added for maxima in a round, over all panels [1], and as a count that is always allowed.
-const GROWTH: f64 = 0.2;
-const FREE_GROWTH: usize = 150;
+const GROWTH: f64 = 0.3;
+const FREE_GROWTH: usize = 250;
 
 /// Area over the wanted one above which a panel is cut [1]: half of it is then nearer.
 const OVER: f64 = 1.4;
+
+/// Largest height of the surface over a panel near a maximum, in roots of the area wanted there [1].
+///
+/// Panels of different height stand as steps beside each other, and small panels see the edge of a step as
+/// one of the body: on fillets between flats the field rose without end as they were cut alone.
+const STEP: f64 = 0.03;
 
 /// The same in the ring from one to [`RING`] patch radii.
 const OVER_RING: f64 = 6.0;
@@ -97,7 +104,7 @@ impl Sight {
     /// Whether charges are to be mended before the maxima can meet their demand.
     pub(super) fn wants_charges(&self, aim: &Aim) -> bool {
         self.unmet.iter().any(|(peak, scale)| {
-            PART * aim.max_field * scale < peak.charges && 0.5 * peak.local < peak.charges
+            PART * aim.max_field * scale < peak.charges && 0.5 * local(peak) < peak.charges
         })
     }
 
@@ -106,9 +113,9 @@ impl Sight {
         let wanted: Vec<(&Peak, f64)> = self
             .unmet
             .iter()
-            .filter(|(peak, scale)| PART * aim.max_field * scale < peak.local || peak.charges < peak.local)
+            .filter(|(peak, scale)| PART * aim.max_field * scale < local(peak) || peak.charges < local(peak))
             .map(|(peak, scale)| {
-                let ratio = PART * aim.max_field * scale / peak.local;
+                let ratio = PART * aim.max_field * scale / local(peak);
                 let factor = ratio.powf(1.0 / AREA_ORDER).clamp(FACTORS[0], FACTORS[1]);
                 (peak, peak.panel_area() * factor)
             })
@@ -123,10 +130,15 @@ impl Sight {
             left -= cuts.len();
             let mut cuts: Vec<(usize, usize)> = cuts.into_iter().map(|(p, edge, _)| (p, edge)).collect();
             cuts.sort_unstable();
-            panels = super::split::bisect(&panels, &cuts);
+            panels = split::bisect(&panels, &cuts);
         }
         panels
     }
+}
+
+/// What smaller panels at a maximum mend: the doubt of the fit, and what they do not follow of the surface [V/m].
+fn local(peak: &Peak) -> f64 {
+    peak.local + peak.facets
 }
 
 /// Panels that are too large for the maxima, with the edge to cut and the excess [1], most excessive first.
@@ -143,17 +155,20 @@ fn cuts(panels: &Panels, wanted: &[(&Peak, f64)]) -> Vec<(usize, usize, f64)> {
 /// The edge to cut and by how much the panel is too large, if it is.
 fn excess(panels: &Panels, peak: &Peak, area: f64, p: usize) -> Option<(usize, f64)> {
     let tri = &panels.triangles[p];
-    if let Some(d) = peak.distance(panels, p).filter(|d| *d <= RING) {
-        let over = tri.area() / (area * if d <= 1.0 { OVER } else { OVER_RING });
-        return (1.0 < over).then(|| (steepest(peak, panels, p), over));
-    }
-    if panels.body[p] as usize == peak.body {
-        return None;
-    }
-    // The other side of a gap: no panel longer than its distance and twice the size of those here.
+    // No panel longer than its distance from the maximum, or than some sizes of those there: a needle that ends
+    // beside it, or the other side of a gap.
     let away = (distance::point_of_triangle(tri, &peak.at) - peak.at).norm();
-    let over = tri.longest_edge() / away.max(OPPOSITE * area.sqrt());
-    (1.0 < over).then(|| (longest(panels, p), over))
+    let long = tri.longest_edge() / away.max(OPPOSITE * area.sqrt());
+    if 1.0 < long {
+        return Some((longest(panels, p), long));
+    }
+    let d = peak.distance(panels, p).filter(|d| *d <= RING)?;
+    let step = panels.offset[p].abs() / (STEP * area.sqrt());
+    let over = tri.area() / (area * if d <= 1.0 { OVER } else { OVER_RING });
+    if over < step {
+        return (1.0 < step).then(|| (split::most_bent(panels, p).0, step));
+    }
+    (1.0 < over).then(|| (steepest(peak, panels, p), over))
 }
 
 /// Length of panels across a gap in roots of the area wanted at the maximum [1].

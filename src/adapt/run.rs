@@ -42,7 +42,7 @@ pub enum Stop {
 }
 
 /// Rounds without a narrower bar of the maxima after which refinement for them ends, the capacitance being met.
-const PATIENCE: usize = 4;
+const PATIENCE: usize = 6;
 
 /// Inverse of the share of panels that are cut in a round to mend the charges for maxima alone [1].
 const FOR_MAXIMA: usize = 4;

@@ -28,6 +28,8 @@ pub struct Chart {
     /// Curves on which its sides lie, as indices in the patches of the surface; side `k` runs from corner `k`
     /// to corner `k + 1`.
     pub curves: [Option<u32>; 3],
+    /// Sides on which its patch ends.
+    pub borders: [bool; 3],
     /// Whether it stands for many facets.
     pub merged: bool,
     /// Mean height of the surface over the facets it stands for, where there are many [m].
@@ -39,14 +41,24 @@ impl Chart {
     pub fn of_facet(surface: &Surface, facet: u32) -> Self {
         let corners = surface.welded.facets[facet as usize].map(|k| surface.welded.points[k as usize]);
         let normals = surface.normals[facet as usize];
-        Chart { facet, corners, normals, curves: [None; 3], merged: false, drawn: 0.0 }
+        Chart { facet, corners, normals, curves: [None; 3], borders: [false; 3], merged: false, drawn: 0.0 }
+    }
+
+    /// The same with sides on `curves`, where it lies on a recognised form.
+    pub fn on(self, surface: &Surface, curves: [Option<u32>; 3]) -> Self {
+        if !self.is_exact(surface) {
+            return self;
+        }
+        let formed = Chart::of_form(surface, self.facet, self.corners, curves);
+        Chart { curves: formed.curves, borders: formed.borders, ..self }
     }
 
     /// A chart on the recognised form of the patch of `facet`, with sides on `curves`.
     pub fn of_form(surface: &Surface, facet: u32, corners: [Vec3; 3], curves: [Option<u32>; 3]) -> Self {
+        let borders = curves.map(|c| c.is_some());
         let curves =
             curves.map(|c| c.filter(|c| matches!(surface.patches.curves[*c as usize], Curve::Arc { .. })));
-        Chart { facet, corners, normals: [Vec3::zeros(); 3], curves, merged: true, drawn: 0.0 }
+        Chart { facet, corners, normals: [Vec3::zeros(); 3], curves, borders, merged: true, drawn: 0.0 }
     }
 
     /// The chart moved without change of shape.

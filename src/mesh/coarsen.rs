@@ -380,8 +380,9 @@ impl<'a> Net<'a> {
             if self.alive[f] {
                 let chart = self.chart(f as u32, corners, self.curves_of(corners));
                 opened(self.surface, Chart { drawn: heights[patch], ..chart }, &mut found);
-            } else if whole[f] && patches.forms[patch] == Form::Free {
-                found.push(Chart::of_facet(self.surface, f as u32));
+            } else if whole[f] && !matches!(patches.forms[patch], Form::Plane { .. }) {
+                let sides = self.curves_of(corners);
+                found.push(Chart::of_facet(self.surface, f as u32).on(self.surface, sides));
             }
         }
         found
@@ -411,10 +412,21 @@ fn opened(surface: &Surface, chart: Chart, found: &mut Vec<Chart>) {
     let mut w = [0.5; 3];
     w[k] = 0.0;
     let middle = chart.spot(surface, w).point;
-    let half = |corners: [Vec3; 3], curves: [Option<u32>; 3]| Chart { corners, curves, ..chart };
+    let (curves, borders) = (&chart.curves, &chart.borders);
+    let half = |corners: [Vec3; 3], curves: [Option<u32>; 3], borders: [bool; 3]| Chart {
+        corners,
+        curves,
+        borders,
+        ..chart
+    };
     let c = &chart.corners;
-    let first = half([c[k], c[next], middle], [chart.curves[k], chart.curves[next], None]);
-    let second = half([c[k], middle, c[last]], [None, chart.curves[next], chart.curves[last]]);
+    let first =
+        half([c[k], c[next], middle], [curves[k], curves[next], None], [borders[k], borders[next], false]);
+    let second = half(
+        [c[k], middle, c[last]],
+        [None, curves[next], curves[last]],
+        [false, borders[next], borders[last]],
+    );
     // Each cut halves an open corner or an arc, so this ends after a few.
     opened(surface, first, found);
     opened(surface, second, found);

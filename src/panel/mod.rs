@@ -29,6 +29,8 @@ pub struct Panels {
     /// Mean height of the rebuilt surface over the flat triangle through its places at the corners of
     /// each panel, outward positive: what the panel itself does not follow [m].
     pub offset: Vec<f64>,
+    /// Mean height of the rebuilt surface over each panel itself: not zero where a form ends [m].
+    pub left: Vec<f64>,
     /// Mean height of the rebuilt surface over the drawn facets under each panel, outward positive [m].
     pub drawn: Vec<f64>,
     /// Conductor of each panel.
@@ -135,6 +137,7 @@ pub fn from_origins(
     Panels {
         triangles: placed.iter().map(|placed| placed.triangle).collect(),
         offset: placed.iter().map(|placed| placed.offset).collect(),
+        left: placed.iter().map(|placed| placed.left).collect(),
         drawn: placed.iter().map(|placed| placed.drawn).collect(),
         net: origins.iter().map(|origin| origin.net).collect(),
         body: origins.iter().map(|origin| origin.body).collect(),

@@ -16,6 +16,8 @@ pub(super) struct Placed {
     pub(super) triangle: Triangle,
     /// Mean height of the surface over the triangle through its places at the corners [m].
     pub(super) offset: f64,
+    /// Mean height of the surface over the panel itself [m].
+    pub(super) left: f64,
     /// Mean height of the surface over what was drawn [m].
     pub(super) drawn: f64,
 }
@@ -50,7 +52,12 @@ pub(super) fn place(assembly: &Assembly, charts: &[Chart], images: &Images, orig
             drawn += weight * (point - base.at(inside)).dot(&base.normal());
         }
     }
+    // On a border the panel stays: beside another form, moved differently, it would stand out as a step.
+    let ends = |w: &[f64; 3]| (0..3).any(|k| chart.borders[k] && w[(k + 2) % 3] <= 0.0);
     let lifted = |k: usize| {
+        if ends(&origin.bary[k]) {
+            return spots[k].point;
+        }
         let along = spots[k].normal.dot(&n);
         let way = if ALONG < along { spots[k].normal / along } else { n };
         spots[k].point + way * offset
@@ -66,11 +73,18 @@ pub(super) fn place(assembly: &Assembly, charts: &[Chart], images: &Images, orig
     // A bulge through a plane is no bulge: the facets are too coarse for the gap there.
     let flat = origin.bary.map(|w| base.at(w));
     if 0.0 < drawn && crosses(images, &flat, &corners) {
-        return Placed { triangle: Triangle::new(flat), offset: 0.0, drawn: 0.0 };
+        return Placed { triangle: Triangle::new(flat), offset: 0.0, left: 0.0, drawn: 0.0 };
     }
+    let placed = Triangle::new(corners);
+    let normal = placed.normal();
+    let left = |(w, weight): &([f64; 3], f64)| {
+        weight * (chart.spot(surface, in_chart(&origin.bary, *w)).point - placed.at(*w)).dot(&normal)
+    };
+    let stays = origin.bary.iter().any(ends);
+    let left = if stays { rules::SIX.iter().map(left).sum() } else { 0.0 };
     // Beside an arc the panel follows its surface no better than its side follows the arc.
     let offset = if offset.abs() < rise { rise } else { offset };
-    Placed { triangle: Triangle::new(corners), offset, drawn }
+    Placed { triangle: placed, offset, left, drawn }
 }
 
 /// Mean way from the straight side of a panel to the arc that it stands for, in the plane of the panel [m];

@@ -160,6 +160,7 @@ pub(crate) fn turned(mut panels: Panels, ring: Ring) -> Panels {
             panels.triangles[s * m + q] = Triangle::new(corners);
             panels.offset[s * m + q] = panels.offset[q];
             panels.drawn[s * m + q] = panels.drawn[q];
+            panels.left[s * m + q] = panels.left[q];
         }
     }
     panels.ring = Some(ring);

@@ -42,6 +42,15 @@ pub fn change(
     (sum, bar)
 }
 
+/// First-order change of `uᵀ C v` from the panels to the surface over them, `ε Σ_T A h_T s_u s_v` [F × units of u and
+/// v] (DESIGN 3.6).
+pub fn left(panels: &Panels, charges: &UnitCharges, eps_r: f64, [u, v]: [&[f64]; 2]) -> f64 {
+    let field = |w: &[f64], p: usize| -> f64 { w.iter().zip(&charges.density).map(|(w, s)| w * s[p]).sum() };
+    let held = (0..panels.len()).filter(|p| 0.0 < panels.left[*p].abs());
+    let term = |p: usize| panels.triangles[p].area() * panels.left[p] * field(u, p) * field(v, p);
+    EPS0 * eps_r * held.map(term).sum::<f64>()
+}
+
 /// Height by which panel `p` may stand wrong, at the gap `gap` [m].
 pub fn doubt(panels: &Panels, p: usize, gap: f64) -> f64 {
     let own = panels.offset[p].abs();

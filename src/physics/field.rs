@@ -155,6 +155,9 @@ const WORTH: f64 = 0.3;
 const STARTS: usize = 4;
 const NEAR_TOP: f64 = 0.95;
 
+/// Fitted value over the highest panel value from which the fit is not believed [1].
+const BEYOND: f64 = 1.1;
+
 fn peak(solved: &Solved, body: usize, ground: &Ground, strength: &[f64], v: &[f64]) -> Peak {
     let panels = &solved.panels;
     let smoothed = ground.smoothed(strength);
@@ -167,8 +170,15 @@ fn peak(solved: &Solved, body: usize, ground: &Ground, strength: &[f64], v: &[f6
     let mut tops = threads::map(groups.len(), |g| highest(panels, ground, (&smoothed, strength), groups[g]));
     tops.sort_by(|(a, _), (b, _)| b.value.total_cmp(&a.value));
     let mut tops = tops.into_iter();
-    let (top, higher) =
+    let (mut top, mut higher) =
         tops.next().unwrap_or_else(|| (search::climb(panels, &ground.cells, strength, 0), 0.0));
+    let raw = ground.raw(strength);
+    // A fit far above every panel is beyond what they tell: the panel value stands, the excess is doubt.
+    if BEYOND * raw < top.value {
+        top.doubt = top.doubt.max(top.value - raw);
+        higher = higher.min(top.value);
+        top.value = raw;
+    }
     let [charges, drawn] = charge_shares(solved, panels.row(ground.cells[0].panel), v);
     let facets = |top: &Top| top.value * (drawn + facets_share(solved, top));
     let bar = |top: &Top, higher: f64| top.doubt.max(higher - top.value) + top.value * charges + facets(top);
@@ -184,7 +194,7 @@ fn peak(solved: &Solved, body: usize, ground: &Ground, strength: &[f64], v: &[f6
         kind: if sharp { Kind::Edge } else { Kind::Smooth },
         field: top.value,
         bar: bar(&top, higher),
-        raw: ground.raw(strength),
+        raw,
         at: if sharp { highest_panel() } else { top.spot.point },
         curvature: (!sharp).then_some(top.curvature),
         area_above: (!sharp).then(|| [0.9, 0.8].map(|share| ground.area_above(&smoothed, share * top.value))),

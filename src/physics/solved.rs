@@ -91,7 +91,10 @@ pub fn solve(panels: Panels, eps_r: f64) -> Result<Solved, SolveError> {
     let estimate = estimate::estimate(&panels, &residuals, &gaps, eps_whole);
     let rims = rim::rims(&panels, &charges);
     let (n, eps) = (panels.n_rows, permittivity(eps_whole));
-    let gain = |i: usize, j: usize| eps * rims.change(&unit_weight(i, n), &unit_weight(j, n)).0;
+    let gain = |i: usize, j: usize| {
+        let (u, v) = (unit_weight(i, n), unit_weight(j, n));
+        eps * rims.change(&u, &v).0 + faceting::left(&panels, &charges, eps_whole, [&u, &v])
+    };
     let entry = |i: usize, j: usize| capacitance.corrected[i][j] + gain(i, j);
     let matrix = (0..n).map(|i| (0..n).map(|j| entry(i, j)).collect()).collect();
     Ok(Solved { panels, eps_r, charges, residuals, estimate, gaps, rims, capacitance, matrix })
