@@ -21,6 +21,7 @@
 use crate::reference::TestBody;
 use crate::shapes;
 use crate::solving;
+use crate::solving::Asked;
 use amberskin::adapt::Stop;
 use amberskin::base::Plane;
 use amberskin::base::Vec3;
@@ -58,8 +59,12 @@ fn assert_exact(peaks: &[Peak], exact: &Exact, size: f64, fold: fn(&Vec3) -> Vec
 /// Relative bar asked of maxima [1].
 const MAX_FIELD: f64 = 0.02;
 
+/// Enough for every body here to meet what is asked.
+const ASKED: Asked = Asked { demand: 5e-3, max_panels: 6000 };
+
 fn solved_peaks(bodies: &[TestBody], plane: Option<Plane>, v: &[f64]) -> Vec<Peak> {
-    let finished = solving::aimed(bodies, plane, v, MAX_FIELD);
+    let assembly = solving::assembled(bodies, &[], plane);
+    let finished = solving::aimed(assembly, plane, ASKED, &[v.to_vec()], MAX_FIELD);
     assert_eq!(finished.stop, Stop::Met, "{:?}", finished.widest);
     let solved = &finished.solved;
     field::solid_peaks(&field::survey_smooth(&solved.panels), solved, v)
@@ -149,16 +154,21 @@ fn both_tips_of_an_ellipsoid_are_maxima_and_nothing_else() {
 
 /// Two unequal bodies without symmetry, and a floor.
 fn odd_pair() -> Vec<TestBody> {
-    let egg = shapes::mapped(&ball(8, 0.0), |p| p.component_mul(&Vec3::new(1.0, 0.8, 0.6)));
-    let small = shapes::scaled(&shapes::turned(&shapes::icosphere(7), [2.0, 1.0, 0.5], 1.1), 0.4);
+    let egg = shapes::mapped(&ball(6, 0.0), |p| p.component_mul(&Vec3::new(1.0, 0.8, 0.6)));
+    let small = shapes::scaled(&shapes::turned(&shapes::icosphere(5), [2.0, 1.0, 0.5], 1.1), 0.4);
     solving::solids([shapes::moved(&egg, [0.1, 0.2, 1.2]), shapes::moved(&small, [1.5, 0.3, 1.4])])
 }
 
+/// On the facets as drawn: merged charts depend on the order of corners.
 #[test]
 fn mirror_image_and_order_of_electrodes_change_no_maximum() {
     let bodies = odd_pair();
     let v = [1.0, -0.4];
-    let own = solved_peaks(&bodies, floor(), &v);
+    let drawn = |bodies: &[TestBody], v: &[f64]| {
+        let solved = solving::solve_as_drawn(bodies, floor(), Asked { demand: 1e9, max_panels: 6000 });
+        field::solid_peaks(&field::survey_smooth(&solved.panels), &solved, v)
+    };
+    let own = drawn(&bodies, &v);
     let flip = |p: &Vec3| Vec3::new(-p.x, p.y, p.z);
     let flipped = |body: &TestBody| TestBody {
         facets: shapes::flipped(&shapes::mapped(&body.facets, flip)),
@@ -166,8 +176,8 @@ fn mirror_image_and_order_of_electrodes_change_no_maximum() {
     };
     let mirrored: Vec<TestBody> = bodies.iter().map(flipped).collect();
     let turned: Vec<TestBody> = bodies.iter().rev().cloned().collect();
-    let seen = solved_peaks(&mirrored, floor(), &v);
-    let swapped = solved_peaks(&turned, floor(), &[v[1], v[0]]);
+    let seen = drawn(&mirrored, &v);
+    let swapped = drawn(&turned, &[v[1], v[0]]);
     for k in 0..2 {
         for (other, at) in [(&seen[k], flip(&own[k].at)), (&swapped[1 - k], own[k].at)] {
             assert!((other.field / own[k].field - 1.0).abs() < 1e-6, "{} and {}", other.field, own[k].field);

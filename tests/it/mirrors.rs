@@ -75,9 +75,9 @@ fn compare(parts: &[Drawn], planes: &[ImagePlane]) -> (Solved, Solved) {
         .enumerate()
         .map(|(k, p)| solving::body(&format!("part {k}"), p.facets.clone(), p.sheet))
         .collect();
-    let part = solving::solve(&drawn, Images::new(planes.to_vec()).unwrap(), ONE_ROUND);
+    let part = solving::solve_as_drawn(&drawn, Images::new(planes.to_vec()).unwrap(), ONE_ROUND);
     let (bodies, origin) = drawn_out(parts, planes);
-    let full = solving::solve(&bodies, None, ONE_ROUND);
+    let full = solving::solve_as_drawn(&bodies, None, ONE_ROUND);
     assert_eq!(full.panels.len(), part.panels.len() << planes.len(), "panels");
     let weight = |k: usize, of: &dyn Fn(&(usize, f64, bool)) -> f64| -> Vec<f64> {
         origin.iter().map(|o| if o.0 == k { of(o) } else { 0.0 }).collect()

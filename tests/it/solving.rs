@@ -9,6 +9,7 @@ use amberskin::adapt::Limits;
 use amberskin::base::Images;
 use amberskin::mesh::Assembly;
 use amberskin::mesh::Body;
+use amberskin::mesh::Patches;
 use amberskin::mesh::accept;
 use amberskin::mesh::assembly;
 use amberskin::mesh::smooth;
@@ -69,15 +70,34 @@ pub(crate) fn refined(assembly: Assembly, images: impl Into<Images>, asked: Aske
     adapt::run(start, 1.0, Demand { capacitance: asked.demand, field: None }, &limits, &|_| {}).unwrap()
 }
 
-/// Refined for capacitances of 0.5 % and for the maxima at row potentials `v`.
-pub(crate) fn aimed(bodies: &[TestBody], images: impl Into<Images>, v: &[f64], max_field: f64) -> Finished {
-    let images = images.into();
-    let assembly = assembled(bodies, &[], &images);
-    let start = adapt::start(FIRST_PANELS, None, panel::build(Arc::new(assembly), &images));
-    let limits = Limits { max_panels: Some(6000), time: None, memory: 4e9 };
-    let potentials = |_: &Matrix| vec![v.to_vec()];
+/// Refined for capacitances as asked and for the maxima in every case of `volts`, row potentials [V].
+pub(crate) fn aimed(
+    assembly: Assembly,
+    images: impl Into<Images>,
+    asked: Asked,
+    volts: &[Vec<f64>],
+    max_field: f64,
+) -> Finished {
+    let start = adapt::start(FIRST_PANELS, None, panel::build(Arc::new(assembly), images));
+    let limits = Limits { max_panels: Some(asked.max_panels), time: None, memory: 4e9 };
+    let potentials = |_: &Matrix| volts.to_vec();
     let aim = Aim { max_field, potentials: &potentials };
-    adapt::run(start, 1.0, Demand { capacitance: 5e-3, field: Some(aim) }, &limits, &|_| {}).unwrap()
+    adapt::run(start, 1.0, Demand { capacitance: asked.demand, field: Some(aim) }, &limits, &|_| {}).unwrap()
+}
+
+/// The assembly with every facet its own chart, for laws of the operator: they belong to panels that are given,
+/// and how a form is merged into few charts depends on the order of its corners.
+pub(crate) fn as_drawn(mut assembly: Assembly) -> Assembly {
+    for body in &mut assembly.bodies {
+        body.surface.patches = Patches::none(body.surface.welded.facets.len());
+    }
+    assembly
+}
+
+/// As [`solve`], on the facets as drawn.
+pub(crate) fn solve_as_drawn(bodies: &[TestBody], images: impl Into<Images>, asked: Asked) -> Solved {
+    let images = images.into();
+    refined(as_drawn(assembled(bodies, &[], &images)), images, asked).solved
 }
 
 /// Bodies without bonds, refined until what is asked is reached.
