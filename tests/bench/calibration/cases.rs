@@ -20,6 +20,9 @@ use std::f64::consts::PI;
 use std::fs;
 use std::path::Path;
 
+/// Potentials [V], and bodies with their highest field [V/m].
+pub(crate) type Drive = (Vec<f64>, Vec<(usize, f64)>);
+
 /// One mesh.
 pub(crate) struct Case {
     /// What it is.
@@ -31,7 +34,7 @@ pub(crate) struct Case {
     /// Maxwell entries that are known [F].
     pub(crate) matrix: Vec<Vec<Option<f64>>>,
     /// Potentials [V], and the highest field of bodies at them [V/m].
-    pub(crate) maxima: Vec<(Vec<f64>, Vec<(usize, f64)>)>,
+    pub(crate) maxima: Vec<Drive>,
     /// Relative uncertainty of these values [1].
     pub(crate) uncertainty: f64,
 }

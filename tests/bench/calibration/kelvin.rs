@@ -77,14 +77,9 @@ fn images(balls: &[Ball], live: usize) -> Vec<Vec<Charge>> {
 
 /// Maxwell matrix of balls in free space [F].
 pub(crate) fn matrix(balls: &[Ball]) -> Vec<Vec<f64>> {
-    let n = balls.len();
-    let mut c = vec![vec![0.0; n]; n];
-    for j in 0..n {
-        for (i, held) in inside(balls, j).iter().enumerate() {
-            c[i][j] = 4.0 * PI * EPS0 * held.iter().map(|(q, _)| q).sum::<f64>();
-        }
-    }
-    c
+    let sum = |held: &Vec<Charge>| 4.0 * PI * EPS0 * held.iter().map(|(q, _)| q).sum::<f64>();
+    // The matrix is symmetric: columns serve as rows.
+    (0..balls.len()).map(|j| inside(balls, j).iter().map(sum).collect()).collect()
 }
 
 /// Highest field on each ball at potentials `v` [V/m]: the best of a net of places, then of ever smaller
