@@ -13,7 +13,8 @@ pub const SHARE: f64 = 0.06;
 /// Share of what flat panels do not follow of their surface that enters the bar [1].
 ///
 /// Balls of four kinds of mesh, alone and in gaps, left 0.016 to 0.018 of it, of the sign of a rough surface:
-/// above its mean height (`cargo bench --bench calibration`).
+/// above its mean height; up to 0.031 at gaps of 0.02 radii, where η and the second order cover the rest
+/// (`cargo bench --bench calibration`).
 pub const BULGE_SHARE: f64 = 0.02;
 
 /// First-order change of `uᵀ C v` from the drawn facets to the rebuilt surface, `ε Σ_T A δn_T s_u s_v`: the

@@ -27,8 +27,8 @@ pub const KAPPA: f64 = 1.3;
 /// What bending alone puts into η, over the change of charge by the height that a flat panel does not follow [1].
 ///
 /// A flat panel of a bent surface meets its neighbours at an angle, and the residual knows it; the mean height
-/// mends most of that.  Over 60 meshes of spheres (regular, jittered, meridians, slivers, alone, in gaps, over
-/// planes) Σ|η| was 0.052 to 0.056 of that change with errors of 0.016 to 0.018, which
+/// mends most of that.  Over 45 meshes of spheres (regular, jittered, meridians, slivers, alone, in gaps, over
+/// planes) Σ|η| was 0.052 to 0.056 of that change with errors of about 0.017, which
 /// [`faceting::BULGE_SHARE`] covers (`cargo bench --bench calibration`).
 const BENT: f64 = 0.045;
 
