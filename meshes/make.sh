@@ -1,5 +1,5 @@
 #!/bin/sh
-# Makes every STL file from its .scad source with OpenSCAD; those of the other CAD kernel too if PYTHON is set (cad/make.sh).
+# Makes every STL file from its .scad source with OpenSCAD.
 # Usage: sh meshes/make.sh [FOLDER]     FOLDER: where to; beside this file when left out
 set -eu
 here=$(cd "$(dirname "$0")" && pwd)
@@ -22,4 +22,3 @@ done
 make guarded_plate_sensor sensor_plate.stl binstl plate
 make guarded_plate_sensor sensor_guard.stl binstl guard
 make guarded_plate_sensor sensor_drive.stl asciistl drive
-sh "$here/cad/make.sh" "$out/cad"

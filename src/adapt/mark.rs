@@ -1,22 +1,17 @@
 //! Which panels to cut, and how far the demand is reached.
 
-use super::aim::Aim;
-use super::split;
 use crate::base::threads;
 use crate::physics::estimate::Estimate;
-use crate::physics::faceting;
 use crate::physics::solved::Bar;
 use crate::physics::solved::Solved;
 use crate::physics::solved::unit_weight;
 
-/// What is asked.
-#[derive(Clone, Copy)]
-pub struct Demand<'a> {
+/// What is asked of capacitances.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Demand {
     /// Relative bar: on every diagonal entry, on mutual and earth entries over [`FLOOR`], and for
     /// smaller ones absolute at that floor [1].
     pub capacitance: f64,
-    /// What is asked of maxima, if anything.
-    pub field: Option<Aim<'a>>,
 }
 
 /// Share of √(C_ii C_jj), or of C_ii for earth entries, under which an entry is held to an absolute
@@ -66,14 +61,9 @@ pub fn reached(matrix: &[Vec<f64>], bars: &(Vec<Vec<Bar>>, Vec<Bar>)) -> f64 {
 }
 
 /// Cuts for the next round: the panels that carry [`BULK`] of the indicators, at most `room` of them,
-/// each along its steepest edge.  In a ring a panel stands for its copies in all sectors.
+/// each along its steepest edge.
 pub(super) fn cuts(solved: &Solved, room: usize) -> Vec<(usize, usize)> {
-    let room = room / solved.panels.copies();
-    let told = indicators(solved);
-    let bends: Vec<f64> =
-        (0..told.len()).map(|p| (0..solved.n_rows()).map(|i| bend(solved, p, i)).sum()).collect();
-    let bent: Vec<bool> = told.iter().zip(&bends).map(|(told, bend)| told < bend).collect();
-    let indicators: Vec<f64> = told.iter().zip(&bends).map(|(told, bend)| told + bend).collect();
+    let indicators = indicators(solved);
     let mut order: Vec<usize> = (0..indicators.len()).collect();
     order.sort_by(|a, b| indicators[*b].total_cmp(&indicators[*a]).then(a.cmp(b)));
     let total: f64 = indicators.iter().sum();
@@ -90,33 +80,15 @@ pub(super) fn cuts(solved: &Solved, room: usize) -> Vec<(usize, usize)> {
     marked.sort_unstable();
     let weight: Vec<f64> = (0..solved.n_rows()).map(|i| 1.0 / solved.matrix[i][i].abs().sqrt()).collect();
     let edge = |p: usize| Estimate::steepest_edge(&solved.panels, &solved.residuals, &weight, p);
-    let side = |p: usize| {
-        let bend = || if bent[p] { split::most_bent(&solved.panels, p).0 } else { edge(p) };
-        split::overbent(&solved.panels, p).unwrap_or_else(bend)
-    };
-    let cuts: Vec<(usize, usize)> = marked.into_iter().map(|p| (p, side(p))).collect();
-    solved.panels.in_all_sectors(&cuts)
+    marked.into_iter().map(|p| (p, edge(p))).collect()
 }
 
-/// Share in the indicator of what a panel does not follow of its surface [1], against what its residuals
-/// tell: as in the bar.
-fn bend(solved: &Solved, p: usize, i: usize) -> f64 {
-    let density = solved.charges.density[i][p];
-    solved.permittivity_of_whole()
-        * faceting::BULGE_SHARE
-        * solved.panels.offset[p].abs()
-        * solved.panels.triangles[p].area()
-        * density
-        * density
-        / scale(&solved.matrix, i, Some(i))
-}
-
-/// Share of every distinct panel in the bars, each relative to what is allowed [1].
+/// Share of every panel in the bars, each relative to what is allowed [1].
 fn indicators(solved: &Solved) -> Vec<f64> {
     let n = solved.n_rows();
     let ones = vec![1.0; n];
     let weights: Vec<Vec<f64>> = (0..n).map(|i| unit_weight(i, n)).collect();
-    threads::map(solved.panels.distinct(), |p| {
+    threads::map(solved.panels.len(), |p| {
         let size = |u: &[f64], v: &[f64]| {
             let eta = solved.estimate.eta(u, v, p);
             eta.mean.abs() + VARIATION_WEIGHT * eta.variation.abs()

@@ -5,14 +5,10 @@
 //! Symbols: as in the crate's table; η̄, η̃ as in `physics::estimate`.
 //! Reference: Dörfler, SIAM J. Numer. Anal. 33 (1996) 1106.
 
-mod aim;
 mod mark;
 mod run;
 mod split;
-mod start;
 
-pub use aim::Aim;
-pub use aim::WidestPeak;
 pub use mark::Demand;
 pub use mark::over_floor;
 pub use mark::reached;
@@ -22,5 +18,5 @@ pub use run::Limits;
 pub use run::Round;
 pub use run::Stop;
 pub use run::run;
+pub use split::at_least;
 pub use split::bisect;
-pub use start::start;

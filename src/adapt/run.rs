@@ -1,8 +1,5 @@
 //! Round after round.
 
-use super::aim;
-use super::aim::Sight;
-use super::aim::WidestPeak;
 use super::mark;
 use super::mark::Demand;
 use super::split;
@@ -37,18 +34,7 @@ pub enum Stop {
     Memory,
     /// No panel is left to cut.
     NothingToCut,
-    /// The bars of maxima stood still over [`PATIENCE`] rounds.
-    Stalled,
 }
-
-/// Rounds without a narrower bar of the maxima after which refinement for them ends, the capacitance being met.
-const PATIENCE: usize = 6;
-
-/// Inverse of the share of panels that are cut in a round to mend the charges for maxima alone [1].
-const FOR_MAXIMA: usize = 4;
-
-/// What counts as narrower [1].
-const NARROWER: f64 = 0.95;
 
 /// What is known at the end of a round.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -57,10 +43,8 @@ pub struct Round {
     pub number: usize,
     /// Panels.
     pub panels: usize,
-    /// Largest relative bar of the capacitances [1].
+    /// Largest relative bar [1].
     pub reached: f64,
-    /// Largest relative bar of the maxima that are steered [1].
-    pub field: Option<f64>,
     /// Seconds since the start [s].
     pub seconds: f64,
     /// Estimated seconds of the next round, if there is one [s].
@@ -72,27 +56,12 @@ pub struct Round {
 pub struct Finished {
     /// The last round, unless an earlier one had far smaller bars.
     pub solved: Solved,
-    /// Its largest relative bar of the capacitances [1].
+    /// Its largest relative bar [1].
     pub reached: f64,
-    /// Its maximum with the largest bar, of those that are steered.
-    pub widest: Option<WidestPeak>,
     /// All rounds.
     pub rounds: Vec<Round>,
     /// Why it stopped.
     pub stop: Stop,
-}
-
-/// A round with what was seen of it.
-struct Looked {
-    solved: Solved,
-    reached: f64,
-    widest: Option<WidestPeak>,
-}
-
-/// What comes after a round.
-enum Next {
-    Stop(Stop),
-    Panels(Box<Panels>),
 }
 
 /// Refines from round to round until the demand is met or a limit is reached.
@@ -109,42 +78,36 @@ pub fn run(
     let began = Instant::now();
     let mut panels = start;
     let mut rounds: Vec<Round> = Vec::new();
-    let mut best: Option<Looked> = None;
+    let mut best: Option<(f64, Solved)> = None;
     loop {
         let before = began.elapsed().as_secs_f64();
         let solved = solved::solve(panels, eps_r)?;
         let reached = mark::reached(&solved.matrix, &solved.bars());
-        let sight = demand.field.as_ref().map(|aim| aim::sight(&solved, aim));
-        let widest = sight.as_ref().and_then(|sight| sight.widest);
         let seconds = began.elapsed().as_secs_f64();
         let n = solved.panels.len();
-        let field = widest.map(|widest| widest.bar);
-        let mut round = Round { number: rounds.len() + 1, panels: n, reached, field, seconds, next: None };
-        rounds.push(round);
-        let next = decide(&solved, sight.as_ref(), &rounds, &demand, limits);
-        let looked = Looked { solved, reached, widest };
-        panels = match next {
-            Next::Stop(stop) => {
-                tell(&round);
-                return Ok(finished(looked, best, rounds, stop, &demand));
-            }
-            Next::Panels(panels) => *panels,
-        };
+        let mut round = Round { number: rounds.len() + 1, panels: n, reached, seconds, next: None };
+        let (stop, cuts) = decide(&solved, reached, demand, limits);
+        if let Some(stop) = stop {
+            tell(&round);
+            rounds.push(round);
+            return Ok(finished(solved, reached, best, rounds, stop));
+        }
         // Between the square of assembly and the cube of factorisation the cube is the safe guess.
-        let growth = (panels.len() as f64 / n as f64).powi(3);
+        let growth = ((n + cuts.len()) as f64 / n as f64).powi(3);
         let next = (seconds - before) * growth;
+        round.next = Some(next);
         let late = limits.time.is_some_and(|limit| limit < seconds + next);
-        if !late {
-            round.next = Some(next);
+        if late {
+            round.next = None;
         }
         tell(&round);
-        let last = rounds.len() - 1;
-        rounds[last] = round;
+        rounds.push(round);
         if late {
-            return Ok(finished(looked, best, rounds, Stop::Time, &demand));
+            return Ok(finished(solved, reached, best, rounds, Stop::Time));
         }
-        if best.as_ref().is_none_or(|best| share(&looked, &demand) <= share(best, &demand)) {
-            best = Some(looked);
+        panels = split::bisect(&solved.panels, &cuts);
+        if best.as_ref().is_none_or(|(least, _)| reached <= *least) {
+            best = Some((reached, solved));
         }
     }
 }
@@ -155,65 +118,41 @@ pub fn run(
 /// were seen to widen them tenfold.
 const WORSE: f64 = 1.5;
 
-/// The largest bar over what is asked of it [1].
-fn share(looked: &Looked, demand: &Demand) -> f64 {
-    let field =
-        demand.field.as_ref().zip(looked.widest).map_or(0.0, |(aim, widest)| widest.bar / aim.max_field);
-    (looked.reached / demand.capacitance).max(field)
-}
-
 /// The last round, or an earlier one whose bars were far smaller.
-fn finished(last: Looked, best: Option<Looked>, rounds: Vec<Round>, stop: Stop, demand: &Demand) -> Finished {
-    let earlier = best.filter(|best| WORSE * share(best, demand) < share(&last, demand));
-    let Looked { solved, reached, widest } = earlier.unwrap_or(last);
-    Finished { solved, reached, widest, rounds, stop }
+fn finished(
+    solved: Solved,
+    reached: f64,
+    best: Option<(f64, Solved)>,
+    rounds: Vec<Round>,
+    stop: Stop,
+) -> Finished {
+    match best {
+        Some((least, earlier)) if WORSE * least < reached => {
+            Finished { solved: earlier, reached: least, rounds, stop }
+        }
+        _ => Finished { solved, reached, rounds, stop },
+    }
 }
 
-/// Whether to stop, and else the panels of the next round.
+/// Whether to stop, and else what to cut.
 fn decide(
     solved: &Solved,
-    sight: Option<&Sight>,
-    rounds: &[Round],
-    demand: &Demand,
+    reached: f64,
+    demand: Demand,
     limits: &Limits,
-) -> Next {
-    let charges_met = rounds.last().is_some_and(|round| round.reached <= demand.capacitance);
-    let aim = demand.field.as_ref();
-    let unmet =
-        aim.zip(sight).filter(|(aim, sight)| sight.widest.is_some_and(|widest| aim.max_field < widest.bar));
-    if charges_met && unmet.is_none() {
-        return Next::Stop(Stop::Met);
-    }
-    if charges_met && stalled(rounds, demand.capacitance) {
-        return Next::Stop(Stop::Stalled);
+) -> (Option<Stop>, Vec<(usize, usize)>) {
+    if reached <= demand.capacitance {
+        return (Some(Stop::Met), Vec::new());
     }
     let n = solved.panels.len();
     let room = limits.max_panels.map_or(usize::MAX, |most| most.saturating_sub(n));
-    if room < solved.panels.copies() {
-        return Next::Stop(Stop::MaxPanels);
+    if room == 0 {
+        return (Some(Stop::MaxPanels), Vec::new());
     }
-    let charges = !charges_met || unmet.is_some_and(|(aim, sight)| sight.wants_charges(aim));
-    // For maxima alone the panels grow by no more than a part of their count.
-    let most = if charges_met { room.min(n.div_ceil(FOR_MAXIMA)) } else { room };
-    let cuts = if charges { mark::cuts(solved, most) } else { Vec::new() };
-    let room = room - cuts.len();
-    let mut panels = split::bisect(&solved.panels, &cuts);
-    if let Some((aim, sight)) = unmet {
-        panels = sight.refined(panels, aim, room);
+    let cuts = mark::cuts(solved, room);
+    if cuts.is_empty() {
+        return (Some(Stop::NothingToCut), cuts);
     }
-    if panels.len() == n {
-        return Next::Stop(Stop::NothingToCut);
-    }
-    let fits = dense::bytes(panels.len(), solved.n_rows(), solved.panels.copies()) <= limits.memory;
-    if fits { Next::Panels(Box::new(panels)) } else { Next::Stop(Stop::Memory) }
-}
-
-/// Whether the bars of the maxima stood still while nothing else was left to do.
-fn stalled(rounds: &[Round], capacitance: f64) -> bool {
-    let Some((early, late)) = rounds.len().checked_sub(PATIENCE).map(|k| rounds.split_at(k)) else {
-        return false;
-    };
-    let least = |rounds: &[Round]| rounds.iter().filter_map(|r| r.field).fold(f64::INFINITY, f64::min);
-    let met = late.iter().all(|round| round.reached <= capacitance);
-    met && !early.is_empty() && NARROWER * least(early) <= least(late)
+    let fits = dense::bytes(n + cuts.len(), solved.n_rows()) <= limits.memory;
+    (if fits { None } else { Some(Stop::Memory) }, cuts)
 }

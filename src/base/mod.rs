@@ -5,8 +5,6 @@
 //! Symbols: as in the crate's table.
 
 pub mod finding;
-pub mod images;
-pub mod motion;
 pub mod si;
 #[cfg_attr(feature = "parallel", path = "threads_parallel.rs")]
 #[cfg_attr(not(feature = "parallel"), path = "threads_serial.rs")]
@@ -15,11 +13,6 @@ pub mod units;
 
 pub use finding::Finding;
 pub use finding::Severity;
-pub use images::ImagePlane;
-pub use images::Images;
-pub use images::ImagesError;
-pub use images::PlaneKind;
-pub use motion::Motion;
 
 /// A point or a vector in space; lengths in metres once a shape is read.
 pub type Vec3 = nalgebra::Vector3<f64>;

@@ -255,36 +255,11 @@ pub enum Fault {
         /// How many are there.
         found: usize,
     },
-    /// A plane that makes endless images with another one.
+    /// A second earth plane.
     #[error(
-        "{this} is parallel to {other}: two planes of one direction make endless rows of images; keep one per direction"
+        "only one [[earth_plane]] is available in this version (up to three at right angles are planned); remove this one"
     )]
-    ParallelPlanes {
-        /// The plane.
-        this: String,
-        /// The earlier one.
-        other: String,
-    },
-    /// A plane that is not at right angles to another one.
-    #[error(
-        "{this} meets {other} at {degrees} degrees; earth planes and mirrors must be at right angles to each other"
-    )]
-    ObliquePlanes {
-        /// The plane.
-        this: String,
-        /// The earlier one.
-        other: String,
-        /// The angle [degrees].
-        degrees: f64,
-    },
-    /// More planes than directions.
-    #[error(
-        "{this} is one plane too many; earth planes and mirrors together can be at most three, at right angles to each other"
-    )]
-    ManyPlanes {
-        /// The plane.
-        this: String,
-    },
+    SecondPlane,
     /// Two outputs, or an output and an input, at one path.
     #[error("`{word}` would be written to {}, which is also {other}; give it another name", .path.display())]
     SamePath {

@@ -1,6 +1,5 @@
 //! A case as a list of words with their values, defaults filled in.
 
-use crate::base::Motion;
 use crate::base::Vec3;
 use crate::case::Case;
 use crate::case::Electrode;
@@ -27,15 +26,9 @@ pub fn resolved(case: &Case) -> Vec<(String, String)> {
     put("units.capacitance".to_owned(), case.printing.capacitance_name.clone());
     put("units.field".to_owned(), case.printing.field_name.clone());
     put("surroundings.relative_permittivity".to_owned(), case.relative_permittivity.to_string());
-    for earth in &case.earth_planes {
+    if let Some(earth) = &case.earth_plane {
         put(format!("earth_plane.{}.through", earth.name), metres(&earth.plane.through));
         put(format!("earth_plane.{}.facing", earth.name), numbers(&earth.plane.facing));
-    }
-    for mirror in &case.mirrors {
-        put(format!("mirror.{}.through", mirror.name), metres(&mirror.plane.through));
-        put(format!("mirror.{}.facing", mirror.name), numbers(&mirror.plane.facing));
-        let parity = if mirror.even { "even" } else { "odd" };
-        put(format!("mirror.{}.parity", mirror.name), parity.to_owned());
     }
     for electrode in &case.electrodes {
         put_electrode(case, electrode, &mut put);
@@ -81,9 +74,6 @@ fn put_electrode(case: &Case, electrode: &Electrode, put: &mut impl FnMut(String
     };
     say("role", role);
     say("sheet", electrode.sheet.to_string());
-    if let Some(radius) = electrode.edge_radius {
-        say("edge_radius", format!("{radius} m"));
-    }
     let angle = electrode.crease_angle.unwrap_or(smooth::CREASE_ANGLE);
     say("crease_angle", degrees(angle));
     let surface = match electrode.surface {
@@ -108,16 +98,6 @@ fn put_electrode(case: &Case, electrode: &Electrode, put: &mut impl FnMut(String
         }
         say("place.shift", metres(&place.shift));
     }
-    if let Some(copy) = &electrode.copy {
-        say("copy", format!("{} of {} of {}", copy.number + 1, copy.count, copy.of));
-        let motion = match copy.motion {
-            Motion::Turn { through, axis, angle } => {
-                format!("turned by {} about {} through {}", degrees(angle), numbers(&axis), metres(&through))
-            }
-            Motion::Step(step) => format!("shifted by {}", metres(&step)),
-        };
-        say("copy.each", motion);
-    }
     if let Some(drawing) = &electrode.drawing {
         say("drawing", drawing.clone());
     }
@@ -132,7 +112,9 @@ fn put_accuracy(case: &Case, put: &mut impl FnMut(String, String)) {
     let accuracy = &case.accuracy;
     let mut say = |word: &str, text: String| put(format!("accuracy.{word}"), text);
     say("capacitance", accuracy.capacitance.to_string());
-    say("max_field", accuracy.max_field.to_string());
+    if let Some(bar) = accuracy.max_field {
+        say("max_field", format!("{bar} (read, not steered)"));
+    }
     if let Some(panels) = accuracy.max_panels {
         say("max_panels", panels.to_string());
     }

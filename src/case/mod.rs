@@ -10,9 +10,7 @@ mod listing;
 mod load;
 pub mod machine;
 mod resolve;
-mod resolve_copies;
 mod resolve_electrode;
-mod resolve_plane;
 mod resolve_value;
 mod resolve_voltage;
 mod wire;
@@ -27,8 +25,6 @@ pub use load::load;
 pub use load::parse;
 pub use load::read_shapes;
 
-use crate::base::Images;
-use crate::base::Motion;
 use crate::base::Plane;
 use crate::base::Vec3;
 use std::path::PathBuf;
@@ -50,13 +46,9 @@ pub struct Case {
     pub printing: Printing,
     /// Relative permittivity of the surroundings [1].
     pub relative_permittivity: f64,
-    /// Earth planes in file order.
-    pub earth_planes: Vec<EarthPlane>,
-    /// Mirrors in file order.
-    pub mirrors: Vec<Mirror>,
-    /// Earth planes and mirrors together, earth planes first.
-    pub images: Images,
-    /// Electrodes in file order, each followed by its copies.
+    /// The earth plane.
+    pub earth_plane: Option<EarthPlane>,
+    /// Electrodes in file order.
     pub electrodes: Vec<Electrode>,
     /// Bonds: names of electrodes, possibly with `earth`.
     pub bonds: Vec<Vec<String>>,
@@ -103,17 +95,6 @@ pub struct EarthPlane {
     pub name: String,
     /// The plane [m].
     pub plane: Plane,
-}
-
-/// `[[mirror]]`.
-#[derive(Clone, Debug, PartialEq)]
-pub struct Mirror {
-    /// Name.
-    pub name: String,
-    /// The plane [m].
-    pub plane: Plane,
-    /// Whether the copies are at the same potential (even) or at the opposite one (odd).
-    pub even: bool,
 }
 
 /// State of an electrode in a voltage case unless the case says otherwise.
@@ -185,8 +166,6 @@ pub struct Electrode {
     pub role: Role,
     /// Open or thin-walled.
     pub sheet: bool,
-    /// Radius of the rounding of all its sharp edges and rims [m]; `None`: sharp.
-    pub edge_radius: Option<f64>,
     /// Angle between facet normals from which an edge is a crease [rad]; `None`: the default.
     pub crease_angle: Option<f64>,
     /// How the facets are understood.
@@ -199,21 +178,6 @@ pub struct Electrode {
     pub place: Option<Place>,
     /// Drawing number.
     pub drawing: Option<String>,
-    /// Which copy it is, if it is repeated.
-    pub copy: Option<Copy>,
-}
-
-/// One of the electrodes that `[[copies]]` makes of one that is drawn; the drawn one is the first.
-#[derive(Clone, Debug, PartialEq)]
-pub struct Copy {
-    /// Name of the electrode as it stands in the case.
-    pub of: String,
-    /// Which, counted from 0.
-    pub number: usize,
-    /// How many there are.
-    pub count: usize,
-    /// From one to the next [m].
-    pub motion: Motion,
 }
 
 /// `[[voltage_case]]`; values as crest (or steady) values.
@@ -243,8 +207,8 @@ pub struct Look {
 pub struct Accuracy {
     /// Relative bar demanded of capacitances [1].
     pub capacitance: f64,
-    /// Relative bar demanded of the maxima of smooth electrodes [1].
-    pub max_field: f64,
+    /// Relative bar demanded of maxima [1]; read, not steered yet.
+    pub max_field: Option<f64>,
     /// Most panels.
     pub max_panels: Option<usize>,
     /// Longest run [s].

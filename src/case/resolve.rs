@@ -9,9 +9,7 @@ use crate::case::Printing;
 use crate::case::Study;
 use crate::case::fault::Fault;
 use crate::case::fault::Sink;
-use crate::case::resolve_copies as copies;
 use crate::case::resolve_electrode as electrode;
-use crate::case::resolve_plane as plane;
 use crate::case::resolve_value as value;
 use crate::case::resolve_voltage as voltage;
 use crate::case::wire;
@@ -23,9 +21,6 @@ use std::path::PathBuf;
 /// Bar demanded of capacitances where the case does not say [1].
 const CAPACITANCE_BAR: f64 = 0.005;
 
-/// Bar demanded of maxima where the case does not say [1].
-const MAX_FIELD_BAR: f64 = 0.02;
-
 /// The case; to be thrown away if `sink` holds faults afterwards.
 pub(super) fn resolve(file: &wire::File, text: &str, path: &Path, sink: &mut Sink) -> Case {
     let (length_unit, length_name) = length(file, sink);
@@ -35,9 +30,6 @@ pub(super) fn resolve(file: &wire::File, text: &str, path: &Path, sink: &mut Sin
         sink.note(0..0, Fault::Missing { word: "electrode", table: "the file".to_owned(), wanted });
     }
     let electrodes = electrode::electrodes(&file.electrode, length_unit, &mut shape_paths, sink);
-    let electrodes = copies::expanded(&file.copies, electrodes, length_unit, sink);
-    electrode::check_guards(&file.electrode, &electrodes, sink);
-    let (earth_planes, mirrors, images) = plane::planes(file, length_unit, sink);
     let bonds = electrode::bonds(&file.bond, &electrodes, sink);
     Case {
         path: path.to_owned(),
@@ -47,9 +39,7 @@ pub(super) fn resolve(file: &wire::File, text: &str, path: &Path, sink: &mut Sin
         length_name,
         printing: printing(file, sink),
         relative_permittivity: relative_permittivity(file.surroundings.as_ref(), sink),
-        earth_planes,
-        mirrors,
-        images,
+        earth_plane: electrode::earth_plane(&file.earth_plane, length_unit, sink),
         voltage_cases: voltage::voltage_cases(&file.voltage_case, &electrodes, &bonds, sink),
         electrodes,
         bonds,
@@ -163,7 +153,6 @@ fn accuracy(wire: Option<&wire::Accuracy>, sink: &mut Sink) -> Accuracy {
     let wire = wire.unwrap_or(&nothing);
     for (field, word, default) in [
         (&wire.capacitance, "capacitance", "0.5 %"),
-        (&wire.max_field, "max_field", "2 %"),
         (&wire.memory_limit, "memory_limit", "70 % of what is free"),
         (&wire.threads, "threads", "all cores"),
     ] {
@@ -175,7 +164,7 @@ fn accuracy(wire: Option<&wire::Accuracy>, sink: &mut Sink) -> Accuracy {
     let threads = "a whole number of threads, from 1 to 1024";
     Accuracy {
         capacitance: share(&wire.capacitance, "capacitance", sink).unwrap_or(CAPACITANCE_BAR),
-        max_field: share(&wire.max_field, "max_field", sink).unwrap_or(MAX_FIELD_BAR),
+        max_field: share(&wire.max_field, "max_field", sink),
         max_panels: value::count(&wire.max_panels, "max_panels", (1, usize::MAX, panels), sink),
         time_limit: value::positive_quantity(&wire.time_limit, "time_limit", Dimension::Time, sink),
         memory_limit: value::positive_quantity(&wire.memory_limit, "memory_limit", Dimension::Memory, sink),

@@ -1,8 +1,10 @@
-//! Electrodes and bonds: names, states and places.
+//! Electrodes, bonds and the earth plane: names, states and places.
 
+use crate::base::Plane;
 use crate::base::Vec3;
 use crate::base::units;
 use crate::base::units::Dimension;
+use crate::case::EarthPlane;
 use crate::case::Electrode;
 use crate::case::Place;
 use crate::case::Role;
@@ -11,7 +13,6 @@ use crate::case::SurfaceKind;
 use crate::case::ValueIs;
 use crate::case::fault::Fault;
 use crate::case::fault::Sink;
-use crate::case::resolve_copies as copies;
 use crate::case::resolve_value as value;
 use crate::case::wire;
 use crate::case::wire::Value;
@@ -59,6 +60,7 @@ pub(super) fn electrodes(
             sink.note(span, Fault::Twice { what: "electrode name", name: electrode.name.clone() });
         }
     }
+    check_guards(wires, &electrodes, sink);
     electrodes
 }
 
@@ -84,14 +86,12 @@ fn electrode(
             sink.assume(&format!("{key}.sheet"), "false");
             false
         }),
-        edge_radius: edge_radius(&wire.edge_radius, unit, sink),
         crease_angle: crease_angle(&wire.crease_angle, &key, sink),
         surface: surface(&wire.surface, &key, sink),
         field_limit: field_limit(&wire.field_limit, sink),
         size_check: size_check(&wire.size_check, unit, sink),
         place: wire.place.as_ref().map(|place| self::place(place, unit, sink)),
         drawing: value::text(&wire.drawing, "drawing", sink),
-        copy: None,
         name,
     }
 }
@@ -191,18 +191,6 @@ fn surface(field: &wire::Field, key: &str, sink: &mut Sink) -> SurfaceKind {
     value::choice(field, "surface", &kinds, sink).unwrap_or(SurfaceKind::Rebuilt)
 }
 
-/// Radius of edges [m], given as a quantity or as a bare number in the length unit.
-fn edge_radius(field: &wire::Field, unit: f64, sink: &mut Sink) -> Option<f64> {
-    let at = field.as_ref()?;
-    let radius = match at.get_ref() {
-        Value::Whole(_) | Value::Number(_) => {
-            value::number_of(at, "edge_radius", "a length above zero", sink).map(|radius| radius * unit)
-        }
-        _ => value::quantity_of(at, "edge_radius", Dimension::Length, sink),
-    };
-    radius.and_then(|radius| value::above_zero(radius, at, "edge_radius", sink))
-}
-
 fn crease_angle(field: &wire::Field, key: &str, sink: &mut Sink) -> Option<f64> {
     if field.is_none() {
         let degrees = format!("{:.1} deg", smooth::CREASE_ANGLE.to_degrees());
@@ -277,23 +265,15 @@ fn place(wire: &wire::Place, unit: f64, sink: &mut Sink) -> Place {
     }
 }
 
-/// Notes faults where a guard follows nobody, or itself by way of others; `electrodes` holds the copies of
-/// each electrode in its place.
-pub(super) fn check_guards(wires: &[Spanned<wire::Electrode>], electrodes: &[Electrode], sink: &mut Sink) {
-    let is_copy = |electrode: &Electrode| electrode.copy.as_ref().is_some_and(|copy| 0 < copy.number);
-    let mut drawn = 0;
+fn check_guards(wires: &[Spanned<wire::Electrode>], electrodes: &[Electrode], sink: &mut Sink) {
     let next = |n: usize| match &electrodes[n].role {
         Role::Guard { follows } => electrodes.iter().position(|other| other.name == *follows),
         _ => None,
     };
     let mut told = vec![false; electrodes.len()];
     for (n, electrode) in electrodes.iter().enumerate() {
-        if is_copy(electrode) {
-            continue;
-        }
-        drawn += 1;
         let Role::Guard { follows } = &electrode.role else { continue };
-        let Some(at) = &wires[drawn - 1].get_ref().follows else { continue };
+        let Some(at) = &wires[n].get_ref().follows else { continue };
         if next(n).is_none() && follows != EARTH && !follows.is_empty() {
             sink.note(at.span(), no_electrode("follows", follows, electrodes));
         }
@@ -337,11 +317,7 @@ fn bond(wire: &Spanned<wire::Bond>, electrodes: &[Electrode], sink: &mut Sink) -
     let members = &wire.get_ref().members;
     value::needed(members, "members", wanted, ("a [[bond]]", wire.span()), sink);
     let mut names: Vec<String> = Vec::new();
-    let given = value::texts(members, "members", wanted, sink).into_iter();
-    // The name of a copied electrode stands for all its copies.
-    for (name, span) in given.flat_map(|(name, span)| {
-        copies::named(&name, electrodes).into_iter().map(move |name| (name, span.clone()))
-    }) {
+    for (name, span) in value::texts(members, "members", wanted, sink) {
         if names.contains(&name) {
             sink.note(span, Fault::Twice { what: "member", name: name.clone() });
         } else if name != EARTH && electrodes.iter().all(|electrode| electrode.name != name) {
@@ -365,4 +341,27 @@ fn bond(wire: &Spanned<wire::Bond>, electrodes: &[Electrode], sink: &mut Sink) -
         sink.note(at.span(), Fault::BondName { name: joined });
     }
     names
+}
+
+/// The earth plane; a second one is a fault.
+pub(super) fn earth_plane(
+    wires: &[Spanned<wire::EarthPlane>],
+    unit: f64,
+    sink: &mut Sink,
+) -> Option<EarthPlane> {
+    for second in wires.iter().skip(1) {
+        sink.note(second.span(), Fault::SecondPlane);
+    }
+    let wire = wires.first()?;
+    let (span, wire) = (wire.span(), wire.get_ref());
+    let here = ("the [[earth_plane]]", span);
+    value::needed(&wire.through, "through", "a point of the plane, [x, y, z]", here.clone(), sink);
+    value::needed(&wire.facing, "facing", "the direction from the plane to the electrodes", here, sink);
+    if wire.name.is_none() {
+        sink.assume("earth_plane.name", "plane");
+    }
+    let through = value::vector(&wire.through, "through", unit, sink).unwrap_or_else(Vec3::zeros);
+    let facing = value::direction(&wire.facing, "facing", sink).unwrap_or_else(Vec3::z);
+    let name = value::text(&wire.name, "name", sink).unwrap_or_else(|| "plane".to_owned());
+    Some(EarthPlane { name, plane: Plane { through, facing } })
 }

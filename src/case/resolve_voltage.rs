@@ -8,7 +8,6 @@ use crate::case::Role;
 use crate::case::VoltageCase;
 use crate::case::fault::Fault;
 use crate::case::fault::Sink;
-use crate::case::resolve_copies as copies;
 use crate::case::resolve_electrode as resolve;
 use crate::case::resolve_value as value;
 use crate::case::wire;
@@ -155,19 +154,11 @@ fn pairs(
         if name.get_ref() == resolve::EARTH {
             let fault = Fault::Reserved { name: name.get_ref().clone(), what: "what takes a value" };
             sink.note(name.span(), fault);
-        } else if copies::named(name.get_ref(), electrodes)
-            .iter()
-            .any(|name| electrodes.iter().all(|electrode| electrode.name != *name))
-        {
+        } else if electrodes.iter().all(|electrode| electrode.name != *name.get_ref()) {
             sink.note(name.span(), resolve::no_electrode(word, name.get_ref(), electrodes));
         }
-        // The name of a copied electrode stands for those of its copies that are not named themselves.
-        let copies = copies::named(name.get_ref(), electrodes);
-        let alone = copies == [name.get_ref().as_str()];
-        let named = |copy: &String| wire.0.iter().any(|(other, _)| other.get_ref() == copy);
         // A value that cannot be read is told of already; its electrode counts as given.
-        let value = number.unwrap_or(f64::NAN);
-        values.extend(copies.into_iter().filter(|copy| alone || !named(copy)).map(|copy| (copy, value)));
+        values.push((name.get_ref().clone(), number.unwrap_or(f64::NAN)));
     }
     values
 }

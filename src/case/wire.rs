@@ -42,13 +42,9 @@ pub(super) struct File {
     #[serde(default)]
     pub(super) electrode: Vec<Spanned<Electrode>>,
     #[serde(default)]
-    pub(super) copies: Vec<Spanned<Copies>>,
-    #[serde(default)]
     pub(super) bond: Vec<Spanned<Bond>>,
     #[serde(default)]
     pub(super) earth_plane: Vec<Spanned<EarthPlane>>,
-    #[serde(default)]
-    pub(super) mirror: Vec<Spanned<Mirror>>,
     #[serde(default)]
     pub(super) voltage_case: Vec<Spanned<VoltageCase>>,
     #[serde(default)]
@@ -94,7 +90,6 @@ pub(super) struct Electrode {
     pub(super) role: Field,
     pub(super) follows: Field,
     pub(super) sheet: Field,
-    pub(super) edge_radius: Field,
     pub(super) crease_angle: Field,
     pub(super) surface: Field,
     pub(super) field_limit: Field,
@@ -125,23 +120,6 @@ pub(super) struct Rotate {
 
 #[derive(Debug, Deserialize)]
 #[serde(deny_unknown_fields)]
-pub(super) struct Copies {
-    pub(super) of: Field,
-    pub(super) count: Field,
-    pub(super) rotate: Option<Spanned<Turn>>,
-    pub(super) step: Field,
-}
-
-#[derive(Debug, Deserialize)]
-#[serde(deny_unknown_fields)]
-pub(super) struct Turn {
-    pub(super) axis: Field,
-    pub(super) through: Field,
-    pub(super) angle: Field,
-}
-
-#[derive(Debug, Deserialize)]
-#[serde(deny_unknown_fields)]
 pub(super) struct Bond {
     pub(super) members: Field,
 }
@@ -152,15 +130,6 @@ pub(super) struct EarthPlane {
     pub(super) name: Field,
     pub(super) through: Field,
     pub(super) facing: Field,
-}
-
-#[derive(Debug, Deserialize)]
-#[serde(deny_unknown_fields)]
-pub(super) struct Mirror {
-    pub(super) name: Field,
-    pub(super) through: Field,
-    pub(super) facing: Field,
-    pub(super) parity: Field,
 }
 
 #[derive(Debug, Deserialize)]
@@ -368,11 +337,8 @@ mod tests {
         agree::<Electrode>(&words::ELECTRODE);
         agree::<Place>(&words::PLACE);
         agree::<Rotate>(&words::ROTATE);
-        agree::<Copies>(&words::COPIES);
-        agree::<Turn>(&words::TURN);
         agree::<Bond>(&words::BOND);
         agree::<EarthPlane>(&words::EARTH_PLANE);
-        agree::<Mirror>(&words::MIRROR);
         agree::<VoltageCase>(&words::VOLTAGE_CASE);
         agree::<Look>(&words::LOOK);
         agree::<Line>(&words::LINE);

@@ -39,10 +39,8 @@ pub(super) static FILE: Words = Words {
         ("units", Holds::Table(&UNITS)),
         ("surroundings", Holds::Table(&SURROUNDINGS)),
         ("electrode", Holds::Tables(&ELECTRODE)),
-        ("copies", Holds::Tables(&COPIES)),
         ("bond", Holds::Tables(&BOND)),
         ("earth_plane", Holds::Tables(&EARTH_PLANE)),
-        ("mirror", Holds::Tables(&MIRROR)),
         ("voltage_case", Holds::Tables(&VOLTAGE_CASE)),
         ("look", Holds::Tables(&LOOK)),
         ("accuracy", Holds::Table(&ACCURACY)),
@@ -50,6 +48,8 @@ pub(super) static FILE: Words = Words {
     ],
     planned: &[
         "wire",
+        "copies",
+        "mirror",
         "dielectric",
         "node",
         "fitted_capacitor",
@@ -100,7 +100,6 @@ pub(super) static ELECTRODE: Words = Words {
         ("role", Holds::Value),
         ("follows", Holds::Value),
         ("sheet", Holds::Value),
-        ("edge_radius", Holds::Value),
         ("crease_angle", Holds::Value),
         ("surface", Holds::Value),
         ("field_limit", Holds::Value),
@@ -108,7 +107,7 @@ pub(super) static ELECTRODE: Words = Words {
         ("place", Holds::Table(&PLACE)),
         ("drawing", Holds::Value),
     ],
-    planned: &[],
+    planned: &["edge_radius"],
 };
 
 pub(super) static PLACE: Words = Words {
@@ -120,40 +119,12 @@ pub(super) static PLACE: Words = Words {
 pub(super) static ROTATE: Words =
     Words { table: "rotate", known: &[("axis", Holds::Value), ("angle", Holds::Value)], planned: &[] };
 
-pub(super) static COPIES: Words = Words {
-    table: "[[copies]]",
-    known: &[
-        ("of", Holds::Value),
-        ("count", Holds::Value),
-        ("rotate", Holds::Table(&TURN)),
-        ("step", Holds::Value),
-    ],
-    planned: &[],
-};
-
-pub(super) static TURN: Words = Words {
-    table: "rotate",
-    known: &[("axis", Holds::Value), ("through", Holds::Value), ("angle", Holds::Value)],
-    planned: &[],
-};
-
 pub(super) static BOND: Words =
     Words { table: "[[bond]]", known: &[("members", Holds::Value)], planned: &[] };
 
 pub(super) static EARTH_PLANE: Words = Words {
     table: "[[earth_plane]]",
     known: &[("name", Holds::Value), ("through", Holds::Value), ("facing", Holds::Value)],
-    planned: &[],
-};
-
-pub(super) static MIRROR: Words = Words {
-    table: "[[mirror]]",
-    known: &[
-        ("name", Holds::Value),
-        ("through", Holds::Value),
-        ("facing", Holds::Value),
-        ("parity", Holds::Value),
-    ],
     planned: &[],
 };
 

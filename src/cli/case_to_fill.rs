@@ -25,12 +25,6 @@ length = ""                   # of the numbers inside the STL files and of bare 
 # name    = "floor"
 # through = [0, 0, 0]
 # facing  = [0, 0, 1]         # to the side on which the electrodes stand
-
-# [[mirror]]                  # where only a part of a symmetric assembly is drawn
-# name    = "middle"
-# through = [0, 0, 0]
-# facing  = [1, 0, 0]         # to the side that is drawn
-# parity  = "even"            # even: the copies are at the same potentials; odd: at the opposite ones
 "#;
 
 /// Beside an open surface: whether a hole or a sheet was meant, only the user knows.

@@ -14,7 +14,7 @@ A CASE FILE, whole (TOML; paths are relative to the file; dimensions invented):
     [units]
     length = \"mm\"                      # of the STL files and of bare numbers; no default
 
-    [[earth_plane]]                    # optional: infinite plane at 0 V
+    [[earth_plane]]                    # optional: infinite plane at 0 V, one at most
     name = \"floor\"
     through = [0, 0, 0]
     facing = [0, 0, 1]                 # to the side on which the electrodes stand
@@ -40,9 +40,8 @@ A CASE FILE, whole (TOML; paths are relative to the file; dimensions invented):
     name = \"gap\"
     line = { from = [0, 0, 300], to = [0, 0, 350], points = 51 }
 
-    [accuracy]                         # defaults: \"0.5 %\", \"2 %\"
-    capacitance = \"0.5 %\"              # bar of every entry
-    max_field = \"2 %\"                  # bar of the highest field of every smooth electrode
+    [accuracy]                         # default: capacitance = \"0.5 %\"
+    capacitance = \"0.5 %\"
     time_limit = \"10 min\"              # also max_panels, memory_limit, threads
 
     [deliver]                          # record and surface file are always written
@@ -55,14 +54,8 @@ Further words: [study] number, issue, title, question, prepared, checked, approv
 left_out; [units] capacitance, field (for printing); [surroundings] relative_permittivity;
 [[electrode]] sheet = true (open or thin-walled), surface = \"rebuilt\" or \"as_drawn\",
 crease_angle = \"30 deg\", shell = 0 or a point it holds, drawing,
-edge_radius = \"0.5 mm\" (rounds all its sharp edges and rims: maxima get numbers there),
 place = { shift = [x, y, z], rotate = { axis = [0, 0, 1], angle = \"30 deg\" }, scale = 1 };
 [[bond]] members = [\"a\", \"b\"], one of which may be \"earth\";
-[[mirror]] name, through, facing, parity = \"even\" (beyond it the same shapes at the same
-potentials) or \"odd\" (at the opposite ones): draw the part in front only; earth planes and
-mirrors together at most three, at right angles;
-[[copies]] of = \"name\", count, and rotate = { axis, through, angle } or step = [x, y, z]: name.1
-is the drawn one; without an angle the turn is divided evenly;
 [[look]] point = [x, y, z], or sheet = { corner = [x, y, z], along = [x, y, z],
 across = [x, y, z], points = [m, n] } with the two sides as vectors.
 
@@ -165,24 +158,10 @@ pub(super) const KEY: &[(&str, &str)] = &[
     ),
     ("Reference", "Earth planes and infinity are one node at 0 V, named `earth`."),
     (
-        "Part and whole",
-        "An even mirror: each electrode is the part drawn and its copies, all at one potential. Matrices, \
-         charges, energies, bars and the netlist are those of the whole, twice those of the part for each even \
-         mirror; the record holds the factor (part_of_whole) and the matrix of the part \
-         (part_capacitance_farad). An odd mirror: beyond it stand copies at the opposite potential, which are not \
-         counted; its plane is at 0 V and part of `earth`.",
-    ),
-    (
         "Rows",
         "Rows and columns stand in the order of the case file. Bonded electrodes that touch are one row, \
          named by its members joined with +; bonded ones apart keep their rows. An electrode bonded with \
          `earth` that meets the earth plane has no row.",
-    ),
-    (
-        "Copies",
-        "[[copies]] turns electrode `name` into name.1 (the drawn one), name.2, ... Each is a row of its own; \
-         in voltage cases and bonds `name` stands for all that are not named themselves, a charge for the charge \
-         of each.",
     ),
     (
         "Bars",

@@ -56,13 +56,10 @@ fn phase_text(phase: &'static str) -> &'static str {
 }
 
 fn round_text(event: &Event) -> String {
-    let Event::Round { number, panels, reached, asked, field, left } = event else { return String::new() };
+    let Event::Round { number, panels, reached, asked, left } = event else { return String::new() };
     let left = left.map(|seconds| format!(", about {} left", duration(seconds))).unwrap_or_default();
     let (reached, asked) = (digits::percent(*reached, false), digits::percent(*asked, false));
-    let field = field.map_or_else(String::new, |(reached, asked)| {
-        format!(", of maxima {} of {}", digits::percent(reached, false), digits::percent(asked, false))
-    });
-    format!("(round {number}: {panels} panels, bar {reached} of {asked} asked{field}{left})")
+    format!("(round {number}: {panels} panels, bar {reached} of {asked} asked{left})")
 }
 
 fn duration(seconds: f64) -> String {

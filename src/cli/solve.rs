@@ -71,6 +71,9 @@ fn say_defaults(case: &Case, show: &Show) {
     if !case.defaults.is_empty() {
         show.remark(&format!("defaults used: {}", case.defaults.join("; ")));
     }
+    if case.accuracy.max_field.is_some() {
+        show.remark("`max_field` was read; refinement is not steered by it in this version");
+    }
 }
 
 /// Refuses, whatever was allowed, to write over the case or a shape file.

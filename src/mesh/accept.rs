@@ -4,7 +4,6 @@ use crate::base::Finding;
 use crate::base::Severity;
 use crate::base::Vec3;
 use crate::geom::Triangle;
-use crate::mesh::Patches;
 use crate::mesh::Surface;
 use crate::mesh::Welded;
 use crate::mesh::edges;
@@ -116,8 +115,7 @@ fn seal(welded: Welded, sheet: bool) -> Surface {
         .iter()
         .map(|corners| [Triangle::new(corners.map(|p| welded.points[p as usize])).normal(); 3])
         .collect();
-    let patches = Patches::none(welded.facets.len());
-    Surface { welded, sheet, normals, patches, creases: Vec::new(), rims_as_drawn: true }
+    Surface { welded, sheet, normals, creases: Vec::new(), rims_as_drawn: true }
 }
 
 fn check(whole: &Welded, sheet: bool, name: &str, diagonal: f64) -> Vec<Finding> {

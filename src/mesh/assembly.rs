@@ -1,7 +1,7 @@
 //! From accepted bodies to the assembly of exposed triangles.
 
 use crate::base::Finding;
-use crate::base::Images;
+use crate::base::Plane;
 use crate::base::Severity;
 use crate::mesh::Assembly;
 use crate::mesh::Body;
@@ -30,9 +30,7 @@ const MOST_LISTED: usize = 20;
 /// `bonds` lists names of bodies held at one potential, possibly with `earth`; they hold
 /// transitively.  Bonded bodies that touch are one conductor: faces that lie on each other, facets
 /// inside its metal and second copies are left out, cut where they must be.  A conductor that
-/// meets a plane at 0 V (an earth plane or an odd mirror) and is bonded with earth is cut there and belongs
-/// to the 0 V reference.  Bodies that meet even mirrors come as wholes ([`super::whole`]); what stands behind
-/// such a mirror is left out without a word, being the copy of what stands in front.  Walls of
+/// meets `plane` and is bonded with earth is cut there and belongs to the 0 V reference.  Walls of
 /// empty cavities are left out.  Takes seconds for some hundred thousand facets.
 ///
 /// # Errors
@@ -40,19 +38,17 @@ const MOST_LISTED: usize = 20;
 pub fn expose(
     bodies: Vec<Body>,
     bonds: &[Vec<String>],
-    images: impl Into<Images>,
+    plane: Option<&Plane>,
 ) -> Result<Assembly, Vec<Finding>> {
-    let images = images.into();
     let parts: Vec<Part> = bodies.iter().map(|b| parts::prepare(&b.surface)).collect();
     let mut findings: Vec<Finding> =
         bodies.iter().zip(&parts).flat_map(|(b, part)| selfcross::within(part, &b.name)).collect();
     let bonded = contact::bonded(&bodies, bonds, &mut findings);
     let metal = contact::joined(&bodies, &parts, &bonded, &mut findings);
-    let mut earthed = vec![false; bodies.len()];
-    for grounded in images.grounded() {
-        let meets = plane_cut::earthed(&bodies, &parts, grounded, &bonded, &mut findings);
-        earthed.iter_mut().zip(meets).for_each(|(earthed, meets)| *earthed |= meets);
-    }
+    let earthed = match plane {
+        Some(plane) => plane_cut::earthed(&bodies, &parts, plane, &bonded, &mut findings),
+        None => vec![false; bodies.len()],
+    };
     if refused(&findings) {
         return Err(capped(findings));
     }
@@ -67,8 +63,7 @@ pub fn expose(
         let exposed = expose::exposed(&Conductor {
             parts: &parts,
             members: &members,
-            planes: images.grounded().filter(|_| earth).map(|grounded| &grounded.plane).collect(),
-            images: &images,
+            plane: plane.filter(|_| earth),
             net,
             abs_tol: contact::tolerance(&bounds),
         });
@@ -144,7 +139,7 @@ fn listed(name: &str, why: Why, what: &LeftOut) -> Finding {
         Why::Inside => ("hidden_inside", "face only the inside of its metal"),
         Why::Contact => ("hidden_contact", "are faces that lie on each other"),
         Why::Double => ("hidden_double", "coincide with other facets of it"),
-        Why::Earth => ("behind_earth_plane", "lie in the plane at 0 V or behind it"),
+        Why::Earth => ("behind_earth_plane", "lie in the earth plane or behind it"),
         Why::Cavity => ("empty_cavity", "are walls of a cavity with nothing in it"),
         Why::Flat => ("no_area", "have no area"),
     };

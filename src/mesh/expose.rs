@@ -6,7 +6,6 @@
 //! stays: inside metal of one potential it carries no charge, while a lost one would falsify the
 //! answer, and a doubled one makes the equations singular.
 
-use crate::base::Images;
 use crate::base::Plane;
 use crate::base::Vec3;
 use crate::geom::Bounds;
@@ -47,7 +46,7 @@ pub(crate) enum Why {
     Contact,
     /// Another facet of the conductor stands for it.
     Double,
-    /// Behind a plane at 0 V or in it.
+    /// Behind the earth plane or in it.
     Earth,
     /// Wall of a cavity with nothing in it.
     Cavity,
@@ -74,10 +73,8 @@ pub(crate) struct Conductor<'a> {
     pub(crate) parts: &'a [Part],
     /// Numbers of its own bodies, ascending.
     pub(crate) members: &'a [usize],
-    /// The planes at 0 V it is cut at, if it belongs to the 0 V reference.
-    pub(crate) planes: Vec<&'a Plane>,
-    /// Everything that makes images: copies behind even mirrors are not part of the result.
-    pub(crate) images: &'a Images,
+    /// The plane it is cut at, if it belongs to the 0 V reference.
+    pub(crate) plane: Option<&'a Plane>,
     /// Its row, or earth.
     pub(crate) net: Net,
     /// Distance up to which surfaces count as touching [m].
@@ -268,7 +265,10 @@ impl Conductor<'_> {
         if !part.is_cavity(shell, PROBE * self.abs_tol) {
             return false;
         }
-        let cut = shell.facets.iter().any(|&f| self.side(part.triangle(f as usize)) != Side::Front);
+        let cut = self.plane.is_some_and(|plane| {
+            let facets = || shell.facets.iter().map(|&f| part.triangle(f as usize));
+            facets().any(|t| plane_cut::side(t, plane, self.abs_tol) != Side::Front)
+        });
         !cut && !self.parts.iter().any(|other| {
             let within = |s: &Shell| !ptr::eq(s, shell) && part.encloses(shell, &other.point_of(s));
             other.bounds().meets(&shell.bounds) && other.shells.iter().any(within)
@@ -282,24 +282,6 @@ impl Conductor<'_> {
         metal(x + step) && metal(x - step)
     }
 
-    /// How a facet stands to the planes it is cut at.
-    fn side(&self, facet: &Triangle) -> Side {
-        let sides = || self.planes.iter().map(|plane| plane_cut::side(facet, plane, self.abs_tol));
-        if sides().any(|side| side == Side::Gone) {
-            Side::Gone
-        } else if sides().any(|side| side == Side::Across) {
-            Side::Across
-        } else {
-            Side::Front
-        }
-    }
-
-    /// Whether a facet belongs to a copy behind an even mirror, or lies in one.
-    fn is_copy(&self, facet: &Triangle) -> bool {
-        let gone = |plane: &Plane| plane_cut::side(facet, plane, self.abs_tol) == Side::Gone;
-        self.images.even().any(gone)
-    }
-
     /// Adds what of one facet is exposed.
     fn facet(
         &self,
@@ -310,10 +292,7 @@ impl Conductor<'_> {
         out: &mut Exposed,
     ) {
         let triangle = self.parts[body].triangle(facet);
-        if self.is_copy(triangle) {
-            return;
-        }
-        let side = self.side(triangle);
+        let side = self.plane.map_or(Side::Front, |plane| plane_cut::side(triangle, plane, self.abs_tol));
         let whole = if side == Side::Gone { Some(Why::Earth) } else { region };
         let piece = |bary: [[f64; 3]; 3], corners: [Vec3; 3]| Piece {
             body: body as u32,
@@ -365,7 +344,7 @@ impl Conductor<'_> {
         side: Side,
     ) -> Result<(), TooFine> {
         let mut cuts = meets.map_or_else(Vec::new, |m| m.cuts.clone());
-        for plane in self.planes.iter().filter(|_| side == Side::Across) {
+        if let (Side::Across, Some(plane)) = (side, self.plane) {
             let level = intersect::section(facet, &plane.through, &plane.facing, self.abs_tol);
             cuts.extend(if let Section::Segment(ends) = level { Some(ends) } else { None });
         }
@@ -376,7 +355,7 @@ impl Conductor<'_> {
 
     /// Why the cell of a facet around `x` is left out, if it is.
     fn class(&self, x: &Vec3, facet: &Triangle, meets: Option<&Meets>, side: Side) -> Option<Why> {
-        if side == Side::Across && self.planes.iter().any(|plane| plane.height(x) < 0.0) {
+        if side == Side::Across && self.plane.is_some_and(|plane| plane.height(x) < 0.0) {
             return Some(Why::Earth);
         }
         let covers = meets.map_or(&[][..], |m| &m.covers);

@@ -6,17 +6,11 @@
 
 pub mod accept;
 pub mod assembly;
-pub mod borders;
-mod chart;
-pub mod coarsen;
 mod contact;
 pub mod edges;
 mod expose;
 mod expose_split;
-mod faces;
 mod flat;
-pub mod form;
-mod form_fit;
 pub mod holes;
 mod joints;
 mod listing;
@@ -25,8 +19,6 @@ mod orient;
 mod parts;
 pub mod place;
 mod plane_cut;
-pub mod recognise;
-mod region;
 pub mod repair;
 pub mod selfcross;
 pub mod shells;
@@ -36,13 +28,8 @@ pub mod stl;
 mod stl_ascii;
 pub mod stl_error;
 pub mod weld;
-pub mod whole;
 
-pub use chart::Chart;
-pub use chart::Spot;
 pub use place::place;
-
-pub use recognise::Patches;
 
 use crate::base::Finding;
 use crate::base::Vec3;
@@ -84,8 +71,6 @@ pub struct Surface {
     /// Recovered unit normal of the drawn surface at each corner of each facet; equals the
     /// facet's own normal where the corner is a crease or the surface is taken as drawn.
     pub normals: Vec<[Vec3; 3]>,
-    /// What its parts are: planes, cylinders and the like, and the curves between them.
-    pub patches: Patches,
     /// Edges where smooth patches end, and rims of sheets.
     pub creases: Vec<Crease>,
     /// The straight sides of a rim are the shape, not chords of a round one.

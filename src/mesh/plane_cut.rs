@@ -1,9 +1,7 @@
-//! How bodies and facets stand to the planes at 0 V.
+//! How bodies and facets stand to the earth plane.
 
 use crate::base::Finding;
-use crate::base::ImagePlane;
 use crate::base::Plane;
-use crate::base::PlaneKind;
 use crate::base::Severity;
 use crate::base::Vec3;
 use crate::geom::Triangle;
@@ -35,48 +33,37 @@ pub(crate) fn side(facet: &Triangle, plane: &Plane, abs_tol: f64) -> Side {
     }
 }
 
-/// Bodies that touch or cross `grounded`, a plane at 0 V; adds the refusals of those that may not.
+/// Bodies that touch or cross `plane`; adds the refusals of those that may not.
 ///
 /// `bonded` holds earth under the number `bodies.len()`.
 pub(crate) fn earthed(
     bodies: &[Body],
     parts: &[Part],
-    grounded: &ImagePlane,
+    plane: &Plane,
     bonded: &Groups,
     findings: &mut Vec<Finding>,
 ) -> Vec<bool> {
-    let stands: Vec<Stand> = parts.iter().map(|part| stand(part, &grounded.plane)).collect();
+    let stands: Vec<Stand> = parts.iter().map(|part| stand(part, plane)).collect();
     let all_behind = stands.iter().all(|s| matches!(s, Stand::Behind(_)));
     let mut earthed = vec![false; bodies.len()];
     for (b, (body, stand)) in bodies.iter().zip(&stands).enumerate() {
         match *stand {
             Stand::Front => {}
-            Stand::Behind(place) => findings.push(behind(&body.name, grounded, place, all_behind)),
+            Stand::Behind(place) => findings.push(behind(&body.name, plane, place, all_behind)),
             Stand::Meets(_) if bonded.same(b, bodies.len()) => earthed[b] = true,
-            Stand::Meets(place) => findings.push(meets(&body.name, grounded.kind, place)),
+            Stand::Meets(place) => findings.push(Finding {
+                severity: Severity::Refusal,
+                code: "meets_earth",
+                text: format!(
+                    "`{0}` touches or crosses the earth plane; bond `{0}` with `earth` if it stands on it, \
+                     or lift it off",
+                    body.name
+                ),
+                place: Some(place),
+            }),
         }
     }
     earthed
-}
-
-/// The refusal for a body that meets a plane at 0 V without being bonded with earth.
-fn meets(name: &str, kind: PlaneKind, place: Vec3) -> Finding {
-    let (code, reason) = match kind {
-        PlaneKind::Earth | PlaneKind::Even => ("meets_earth", ""),
-        PlaneKind::Odd => (
-            "meets_mirror",
-            ", where the potential is 0 V and its copy at the opposite potential would touch it",
-        ),
-    };
-    Finding {
-        severity: Severity::Refusal,
-        code,
-        text: format!(
-            "`{name}` touches or crosses the {}{reason}; bond `{name}` with `earth` if it stands on it, or lift it off",
-            kind.word()
-        ),
-        place: Some(place),
-    }
 }
 
 /// How a body stands to the plane, with its lowest (or, behind, its highest) place.
@@ -99,27 +86,25 @@ fn stand(part: &Part, plane: &Plane) -> Stand {
     }
 }
 
-fn behind(name: &str, grounded: &ImagePlane, place: Vec3, all: bool) -> Finding {
-    let f = grounded.plane.facing;
+fn behind(name: &str, plane: &Plane, place: Vec3, all: bool) -> Finding {
+    let f = plane.facing;
     let advice = if all {
-        format!("turn `facing` to {}", written(&-f))
+        format!("turn `facing` to [{}, {}, {}]", turned(f.x), turned(f.y), turned(f.z))
     } else {
         "move it to the front, or turn `facing` if the assembly stands on the other side".to_owned()
     };
     Finding {
         severity: Severity::Refusal,
-        code: if grounded.kind == PlaneKind::Odd { "behind_mirror" } else { "behind_earth" },
+        code: "behind_earth",
         text: format!(
-            "`{name}` lies wholly behind the {}, which faces {}; {advice}",
-            grounded.kind.word(),
-            written(&f)
+            "`{name}` lies wholly behind the earth plane, which faces [{}, {}, {}]; {advice}",
+            f.x, f.y, f.z
         ),
         place: Some(place),
     }
 }
 
-/// A direction as it stands in a case, without negative zeros.
-pub(crate) fn written(v: &Vec3) -> String {
-    let [x, y, z] = [v.x, v.y, v.z].map(|c| if c == 0.0 { 0.0 } else { c });
-    format!("[{x}, {y}, {z}]")
+/// The opposite number, without a negative zero.
+fn turned(x: f64) -> f64 {
+    if x == 0.0 { 0.0 } else { -x }
 }

@@ -1,9 +1,7 @@
 //! Smooth patches, creases, and the normals of the drawn surface recovered from its facets.
 
 use super::Crease;
-use super::Surface;
 use super::Welded;
-use super::recognise;
 use crate::base::Vec3;
 use crate::geom::Triangle;
 use std::f64::consts::PI;
@@ -49,21 +47,6 @@ pub struct Smooth {
     pub creases: Vec<Crease>,
     /// Largest turn that was smoothed [rad], and where [m].
     pub sharpest_smoothed: Option<(f64, Vec3)>,
-}
-
-/// The surface with its forms, normals and creases recovered; and the largest turn that was smoothed [rad],
-/// with its place [m].
-pub fn rebuild(surface: Surface, crease_angle: f64) -> (Surface, Option<(f64, Vec3)>) {
-    let Smooth { normals, creases, sharpest_smoothed } = recover(&surface.welded, crease_angle);
-    let patches = recognise::recognise(&surface.welded, crease_angle);
-    (Surface { normals, creases, patches, rims_as_drawn: false, ..surface }, sharpest_smoothed)
-}
-
-/// The surface with its facets as the shape; only what is flat is told to be flat.
-pub fn keep(surface: Surface) -> Surface {
-    let Smooth { normals, creases, .. } = as_drawn(&surface.welded);
-    let patches = recognise::recognise(&surface.welded, COPLANAR);
-    Surface { normals, creases, patches, rims_as_drawn: true, ..surface }
 }
 
 /// An edge with the facets beside it.

@@ -21,28 +21,21 @@ pub struct Dense {
 
 /// Bytes that assembly and factorisation of `n` panels with `rows` right sides take [B].
 ///
-/// The matrix itself, factored in place, or for panels that repeat in `sectors` around an axis its first
-/// block column and one complex block, and 3,000 bytes a panel for moments, edges, residuals and
+/// The matrix itself, factored in place, and 3,000 bytes a panel for moments, edges, residuals and
 /// blocks of the factorisation (measured: see `tests/bench/round.rs`).
-pub fn bytes(n: usize, rows: usize, sectors: usize) -> f64 {
-    let (n, sectors) = (n as f64, sectors as f64);
-    let matrix = if 1.0 < sectors { 8.0 / sectors + 16.0 / (sectors * sectors) } else { 8.0 };
-    matrix * n * n + n * (3000.0 + 200.0 * rows as f64)
+pub fn bytes(n: usize, rows: usize) -> f64 {
+    let n = n as f64;
+    8.0 * n * n + n * (3000.0 + 200.0 * rows as f64)
 }
 
 /// Assembles the matrix, columns in parallel.
 pub fn assemble(panels: &Panels, sources: &Sources) -> Dense {
-    Dense { n: panels.len(), columns: columns(panels, sources, panels.len()) }
-}
-
-/// The columns of the first `count` panels, one after the other [1/m].
-pub fn columns(panels: &Panels, sources: &Sources, count: usize) -> Vec<f64> {
     let n = panels.len();
     // All first test points, then all second ones, then all third: the mean is over three runs.
     let at = |w: [f64; 3]| panels.triangles.iter().map(move |tri| tri.at(w));
     let points: Vec<Vec3> = rules::TEST_POINTS.iter().flat_map(|w| at(*w)).collect();
-    let targets = Targets::new(&points, sources.reflections());
-    let mut columns = vec![0.0; n * count];
+    let targets = Targets::new(&points, sources.plane());
+    let mut columns = vec![0.0; n * n];
     threads::for_each_chunk(&mut columns, n.max(1), |j, column| {
         let (mut seen, mut scratch) = (vec![0.0; targets.padded()], vec![0.0; targets.padded()]);
         sources.column(j, &targets, &mut seen, &mut scratch);
@@ -51,5 +44,5 @@ pub fn columns(panels: &Panels, sources: &Sources, count: usize) -> Vec<f64> {
             *entry = (seen[i] + seen[n + i] + seen[2 * n + i]) * scale;
         }
     });
-    columns
+    Dense { n, columns }
 }

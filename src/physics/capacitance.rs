@@ -26,7 +26,7 @@ pub fn corrected(panels: &Panels, charges: &UnitCharges, residuals: &Residuals, 
     let areas: Vec<f64> = panels.triangles.iter().map(|tri| tri.area()).collect();
     let mut raw = vec![vec![0.0; n_rows]; n_rows];
     let mut full = raw.clone();
-    for i in panels.first_rows() {
+    for i in 0..n_rows {
         for j in 0..n_rows {
             let (s_i, s_j) = (&charges.density[i], &charges.density[j]);
             let on_i = (0..n).filter(|p| panels.row(*p) == Some(i));
@@ -37,7 +37,6 @@ pub fn corrected(panels: &Panels, charges: &UnitCharges, residuals: &Residuals, 
             full[i][j] = raw[i][j] + eps * (0..n).map(|p| s_i[p] * areas[p] * mean(p)).sum::<f64>();
         }
     }
-    (raw, full) = (panels.turned_entries(raw), panels.turned_entries(full));
     Capacitance { corrected: symmetrised(&full), raw }
 }
 

@@ -1,6 +1,5 @@
 //! How narrow the gaps are at which each panel stands, against its own length.
 
-use crate::base::Plane;
 use crate::base::threads;
 use crate::geom::bounds::Bounds;
 use crate::geom::distance;
@@ -8,7 +7,7 @@ use crate::geom::tree;
 use crate::mesh::Net;
 use crate::panel::Panels;
 
-/// Distance of each panel to the nearest one of another conductor, or to a plane at 0 V [m]; infinite
+/// Distance of each panel to the nearest one of another conductor, or to the earth plane [m]; infinite
 /// where it is more than the panel's own length.
 pub fn gaps(panels: &Panels) -> Vec<f64> {
     let boxes: Vec<Bounds> = panels.triangles.iter().map(|tri| Bounds::of(&tri.corners)).collect();
@@ -35,18 +34,14 @@ pub fn gap_of(panels: &Panels, p: usize) -> f64 {
     nearest.fold(above_plane(panels, p), f64::min)
 }
 
-/// Height of the lowest corner over the planes at 0 V [m]; infinite without one, or on earth itself.
-///
-/// No image of another conductor is nearer than the conductor itself or the plane at 0 V before it, and that
-/// of the own one across an even mirror is at the same potential.
+/// Height of the lowest corner over the earth plane [m]; infinite without one, or on earth itself.
 fn above_plane(panels: &Panels, p: usize) -> f64 {
-    if panels.net[p] == Net::Earth {
-        return f64::INFINITY;
+    match &panels.plane {
+        Some(plane) if panels.net[p] != Net::Earth => {
+            panels.triangles[p].corners.iter().map(|x| plane.height(x)).fold(f64::INFINITY, f64::min).max(0.0)
+        }
+        _ => f64::INFINITY,
     }
-    let corners = &panels.triangles[p].corners;
-    let height =
-        |plane: &Plane| corners.iter().map(|x| plane.height(x)).fold(f64::INFINITY, f64::min).max(0.0);
-    panels.images.grounded().map(|grounded| height(&grounded.plane)).fold(f64::INFINITY, f64::min)
 }
 
 /// `ln(L/d)`, at least 1, of a panel of length `L` at a gap `d` [1].

@@ -1,7 +1,6 @@
 //! Potential and field at points in space.
 
-use crate::base::Images;
-use crate::base::PlaneKind;
+use crate::base::Plane;
 use crate::base::Vec3;
 use crate::base::threads;
 use crate::geom::Triangle;
@@ -19,10 +18,8 @@ use std::f64::consts::PI;
 pub enum Medium {
     /// In the surroundings.
     Surroundings,
-    /// In the metal of a body, or of a copy of it at its potential.
+    /// In the metal of a body.
     Metal(usize),
-    /// In the metal of a copy of a body at the opposite potential.
-    Opposite(usize),
     /// Behind the earth plane.
     BehindEarth,
 }
@@ -39,7 +36,7 @@ pub struct Seen {
 /// Tells for any point where it lies.
 pub struct Map {
     solids: Vec<(usize, Winding)>,
-    images: Images,
+    plane: Option<Plane>,
 }
 
 impl Map {
@@ -52,27 +49,22 @@ impl Map {
         };
         Map {
             solids: panels.assembly.bodies.iter().enumerate().filter_map(solid).collect(),
-            images: panels.images.clone(),
+            plane: panels.plane,
         }
     }
 
     /// Where `x` lies.
     pub fn medium(&self, x: &Vec3) -> Medium {
-        let behind =
-            |earth: &&crate::base::ImagePlane| earth.kind == PlaneKind::Earth && earth.plane.height(x) < 0.0;
-        if self.images.planes().iter().any(|plane| behind(&plane)) {
+        if self.plane.is_some_and(|plane| plane.height(x) < 0.0) {
             return Medium::BehindEarth;
         }
-        let front = self.images.to_front(x);
-        let x = front.point(x);
-        let metal = |body| if front.sign < 0.0 { Medium::Opposite(body) } else { Medium::Metal(body) };
-        let holder = self.solids.iter().find(|(_, winding)| winding.holds(&x));
-        holder.map_or(Medium::Surroundings, |(body, _)| metal(*body))
+        let holder = self.solids.iter().find(|(_, winding)| winding.holds(x));
+        holder.map_or(Medium::Surroundings, |(body, _)| Medium::Metal(*body))
     }
 }
 
 /// Potential and field at `points` with row potentials `v`; in metal its own potential and no field,
-/// behind the earth plane nothing.  Places behind a mirror are answered by symmetry.
+/// behind the earth plane nothing.
 ///
 /// Exact to the charges: their error shows within about one panel length of a surface.  A point closer
 /// to a panel of a solid than the rebuilt surface is to its facet, and not above the panel by more than a
@@ -81,32 +73,20 @@ pub fn look(solved: &Solved, sources: &Sources, map: &Map, v: &[f64], points: &[
     let density = field::normal_field(solved, v);
     let none = Seen { potential: 0.0, field: Vec3::zeros() };
     let potentials = sources.potentials(points, std::slice::from_ref(&density));
-    threads::map(points.len(), |k| {
-        let front = map.images.to_front(&points[k]);
-        let x = front.point(&points[k]);
-        let seen = match map.medium(&x) {
-            Medium::BehindEarth => none,
-            _ if let Some(p) = surface_panel(&solved.panels, &x) => Seen {
-                potential: body_potential(&solved.panels, solved.panels.body[p] as usize, v),
-                field: solved.panels.triangles[p].normal() * density[p],
-            },
-            // In front of all mirrors nothing is a copy.
-            Medium::Metal(body) | Medium::Opposite(body) => {
-                Seen { potential: body_potential(&solved.panels, body, v), ..none }
-            }
-            Medium::Surroundings => {
-                let gradient = sources.gradient(&x, &density);
-                // On an edge or rim the field has no value: zero stands for it, and the medium says where it is.
-                let finite = gradient.iter().all(|g| g.is_finite());
-                let field = if finite { -gradient / (4.0 * PI) } else { Vec3::zeros() };
-                // The potential sum is the same at a place and, but for the sign, at its images.
-                return Seen {
-                    potential: potentials[0][k] / (4.0 * PI),
-                    field: front.direction(&field) * front.sign,
-                };
-            }
-        };
-        Seen { potential: seen.potential * front.sign, field: front.direction(&seen.field) * front.sign }
+    threads::map(points.len(), |k| match map.medium(&points[k]) {
+        Medium::BehindEarth => none,
+        _ if let Some(p) = surface_panel(&solved.panels, &points[k]) => Seen {
+            potential: body_potential(&solved.panels, solved.panels.body[p] as usize, v),
+            field: solved.panels.triangles[p].normal() * density[p],
+        },
+        Medium::Metal(body) => Seen { potential: body_potential(&solved.panels, body, v), ..none },
+        Medium::Surroundings => {
+            let gradient = sources.gradient(&points[k], &density);
+            // On an edge or rim the field has no value: zero stands for it, and the medium says where it is.
+            let finite = gradient.iter().all(|g| g.is_finite());
+            let field = if finite { -gradient / (4.0 * PI) } else { Vec3::zeros() };
+            Seen { potential: potentials[0][k] / (4.0 * PI), field }
+        }
     })
 }
 
@@ -124,8 +104,7 @@ fn surface_panel(panels: &Panels, x: &Vec3) -> Option<usize> {
     let near = (0..panels.len()).filter(solid).filter(|p| {
         let tri = &panels.triangles[*p];
         let side = if 0.0 < tri.normal().dot(&(x - tri.centroid())) { ABOVE } else { UNDER };
-        distance(*p)
-            <= side * panels.offset[*p].abs().max(panels.drawn[*p].abs()) + ROUNDING * tri.longest_edge()
+        distance(*p) <= side * panels.offset[*p].abs() + ROUNDING * tri.longest_edge()
     });
     near.min_by(|a, b| distance(*a).total_cmp(&distance(*b)))
 }

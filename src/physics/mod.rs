@@ -13,13 +13,8 @@ pub mod faceting;
 pub mod field;
 pub mod gap;
 pub mod look;
-pub mod patch;
-mod regions;
 pub mod rim;
-pub mod rounding;
-mod search;
 pub mod solved;
-pub mod strength;
 pub mod unit;
 
 use crate::base::si::EPS0;

@@ -6,12 +6,9 @@
 
 use crate::base::Vec3;
 use crate::mesh::Surface;
-use crate::mesh::borders::Border;
-use crate::mesh::borders::Curve;
 use crate::panel::Panels;
 use crate::physics::unit::UnitCharges;
 use std::collections::HashMap;
-use std::collections::HashSet;
 use std::f64::consts::PI;
 
 /// Largest turn between neighbouring sides of a rim that is taken for a chord of a round one [rad]: 35°.
@@ -49,7 +46,7 @@ pub fn rims(panels: &Panels, charges: &UnitCharges) -> Rims {
     let mut by_facet: HashMap<(u32, u32), Vec<usize>> = HashMap::new();
     if !chords.is_empty() {
         (0..panels.len())
-            .for_each(|p| by_facet.entry((panels.body[p], panels.facet(p))).or_default().push(p));
+            .for_each(|p| by_facet.entry((panels.body[p], panels.facet[p])).or_default().push(p));
     }
     let mut rims = Rims { gain: Vec::new(), strength: vec![Vec::new(); panels.n_rows] };
     for chord in &chords {
@@ -83,11 +80,10 @@ fn chords(body: usize, surface: &Surface) -> Vec<Chord> {
         return Vec::new();
     }
     let point = |k: u32| surface.welded.points[k as usize];
-    let arcs = on_arcs(surface);
     let sides: Vec<(u32, [u32; 2])> = surface
         .creases
         .iter()
-        .filter(|crease| crease.facets[0] == crease.facets[1] && !arcs.contains(&rising(crease.ends)))
+        .filter(|crease| crease.facets[0] == crease.facets[1])
         .map(|crease| (crease.facets[0], directed(surface, crease.facets[0], crease.ends)))
         .collect();
     let mut leaving: HashMap<u32, Vec<usize>> = HashMap::new();
@@ -120,17 +116,6 @@ fn chords(body: usize, surface: &Surface) -> Vec<Chord> {
         (rise.abs() > 0.0).then(|| Chord { body, facet: *facet, ends: [point(*a), point(*b)], rise })
     };
     sides.iter().enumerate().filter_map(chord).collect()
-}
-
-/// Edges that are chords of recognised arcs: the panels themselves follow those.
-fn on_arcs(surface: &Surface) -> HashSet<[u32; 2]> {
-    let patches = &surface.patches;
-    let on_arc = |border: &&Border| matches!(patches.curves[border.curve as usize], Curve::Arc { .. });
-    patches.borders.iter().filter(on_arc).map(|border| rising(border.ends)).collect()
-}
-
-fn rising([a, b]: [u32; 2]) -> [u32; 2] {
-    [a.min(b), a.max(b)]
 }
 
 /// The ends of an edge in the order in which the facet runs through them.

@@ -5,9 +5,6 @@ use crate::kernel::rules;
 use crate::operator::Sources;
 use crate::operator::dense;
 use crate::panel::Panels;
-use crate::panel::Ring;
-use crate::solve::circulant;
-use crate::solve::circulant::BlockColumn;
 use crate::solve::direct;
 use crate::solve::direct::SolveError;
 use std::f64::consts::PI;
@@ -33,9 +30,6 @@ pub struct Residuals {
 /// # Errors
 /// Those of the factorisation.
 pub fn solve(panels: &Panels, sources: &Sources) -> Result<UnitCharges, SolveError> {
-    if let Some(ring) = &panels.ring {
-        return solve_ring(panels, sources, ring);
-    }
     let n = panels.len();
     let factors = direct::factor(dense::assemble(panels, sources))?;
     let mut b = vec![0.0; n * panels.n_rows];
@@ -48,31 +42,10 @@ pub fn solve(panels: &Panels, sources: &Sources) -> Result<UnitCharges, SolveErr
     Ok(UnitCharges { density: b.chunks(n.max(1)).map(per_area).collect(), pivot_ratio: factors.pivot_ratio })
 }
 
-/// The same for panels that repeat around an axis: one block column, one right side for each set of rows that
-/// turn into each other; the other solutions are turned copies.
-fn solve_ring(panels: &Panels, sources: &Sources, ring: &Ring) -> Result<UnitCharges, SolveError> {
-    let (n, m, count) = (panels.len(), panels.distinct(), ring.sectors());
-    let first = ring.first_rows();
-    let matrix = BlockColumn { m, count, columns: dense::columns(panels, sources, m) };
-    let mut b = vec![0.0; n * first.len()];
-    for (row, column) in first.iter().zip(b.chunks_mut(n.max(1))) {
-        (0..n).for_each(|p| column[p] = 4.0 * PI * panels.unit_potential(p, *row));
-    }
-    let pivot_ratio = circulant::solve(&matrix, &mut b)?;
-    let mut density = vec![Vec::new(); panels.n_rows];
-    for (row, charge) in first.iter().zip(b.chunks(n.max(1))) {
-        for s in 0..count {
-            let turned = |p: usize| charge[(p + n - s * m) % n] / panels.triangles[p].area();
-            density[ring.turned_row(*row, s)] = (0..n).map(turned).collect();
-        }
-    }
-    Ok(UnitCharges { density, pivot_ratio })
-}
-
 /// Evaluates all unit solutions at the six points of every panel; one pass over all pairs.
 pub fn residuals(panels: &Panels, sources: &Sources, charges: &UnitCharges) -> Residuals {
-    let distinct = &panels.triangles[..panels.distinct()];
-    let points: Vec<Vec3> = distinct.iter().flat_map(|tri| rules::SIX.map(|(w, _)| tri.at(w))).collect();
+    let points: Vec<Vec3> =
+        panels.triangles.iter().flat_map(|tri| rules::SIX.map(|(w, _)| tri.at(w))).collect();
     let sums = sources.potentials(&points, &charges.density);
     let of_row = |(j, sum): (usize, &Vec<f64>)| {
         let (groups, _) = sum.as_chunks::<6>();
@@ -80,18 +53,5 @@ pub fn residuals(panels: &Panels, sources: &Sources, charges: &UnitCharges) -> R
             |(p, seen): (usize, &[f64; 6])| seen.map(|v| panels.unit_potential(p, j) - v / (4.0 * PI));
         groups.iter().enumerate().map(of_panel).collect()
     };
-    let at: Vec<Vec<[f64; 6]>> = sums.iter().enumerate().map(of_row).collect();
-    match &panels.ring {
-        Some(ring) => Residuals { at: all_sectors(&at, ring) },
-        None => Residuals { at },
-    }
-}
-
-/// Residuals in all sectors from those of all unit solutions in the first one: row `j` seen in sector `t` is
-/// row `j` turned back `t` times, seen in the first.
-fn all_sectors(first: &[Vec<[f64; 6]>], ring: &Ring) -> Vec<Vec<[f64; 6]>> {
-    let count = ring.sectors();
-    let of_row =
-        |j: usize| (0..count).flat_map(|t| first[ring.turned_row(j, count - t)].iter().copied()).collect();
-    (0..first.len()).map(of_row).collect()
+    Residuals { at: sums.iter().enumerate().map(of_row).collect() }
 }

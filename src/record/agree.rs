@@ -13,29 +13,7 @@ const AGREE_REL: f64 = 1e-9;
 /// sums; the verdict agrees with its codes, and hides no failed check, limit or accuracy.  A change
 /// made to all keys alike is not found.
 pub(super) fn contradiction(record: &Record) -> Option<(&'static str, String)> {
-    capacitances(record).or_else(|| part(record)).or_else(|| verdict(record))
-}
-
-/// The matrix of the part times the factor is that of the whole; records without mirrors may lack it.
-fn part(record: &Record) -> Option<(&'static str, String)> {
-    let factor = record.part_of_whole.factor;
-    for (i, row) in record.part_capacitance_farad.iter().enumerate() {
-        for (j, part) in row.iter().enumerate() {
-            let (whole, size) = (record.capacitance_farad[i][j], record.capacitance_farad[i][i]);
-            let agrees = (part * factor - whole).abs() <= AGREE_REL * size.abs();
-            if !agrees {
-                let names = [&record.electrodes[i], &record.electrodes[j]];
-                let problem = format!(
-                    "`{}` and `{}` have {part:e} F, but {:e} F follows from `capacitance_farad` and `part_of_whole`",
-                    names[0],
-                    names[1],
-                    whole / factor
-                );
-                return Some(("part_capacitance_farad", problem));
-            }
-        }
-    }
-    None
+    capacitances(record).or_else(|| verdict(record))
 }
 
 fn capacitances(record: &Record) -> Option<(&'static str, String)> {

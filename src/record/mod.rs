@@ -64,13 +64,6 @@ pub struct Record {
     pub potential_coefficients_per_farad: Matrix,
     /// Its bars [1/F].
     pub potential_coefficients_bar_per_farad: Matrix,
-    /// How the electrodes of all matrices, charges and energies stand to the part that is drawn.
-    #[serde(default)]
-    pub part_of_whole: PartOfWhole,
-    /// `capacitance_farad` over the factor of `part_of_whole`: of the part that is drawn, in the field of the
-    /// whole [F].
-    #[serde(default)]
-    pub part_capacitance_farad: Matrix,
     /// What was checked at run time.
     pub checks: Vec<Check>,
     /// What was noticed.
@@ -79,9 +72,6 @@ pub struct Record {
     pub parts: Vec<Part>,
     /// Creases and rims, those with an unbounded field.
     pub edges: Vec<Edge>,
-    /// Corners at which they end.
-    #[serde(default)]
-    pub corners: Vec<Corner>,
     /// Potential and field at the places asked for.
     pub looks: Vec<Look>,
     /// Results for each set of applied potentials.
@@ -90,21 +80,6 @@ pub struct Record {
     pub budget: Budget,
     /// What it took.
     pub effort: Effort,
-}
-
-/// How the whole assembly stands to the part in front of the mirrors.
-#[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
-pub struct PartOfWhole {
-    /// Charge of an electrode over that of its drawn part: 2 for each even mirror [1].
-    pub factor: f64,
-    /// The rule in words; empty without mirrors.
-    pub text: String,
-}
-
-impl Default for PartOfWhole {
-    fn default() -> Self {
-        PartOfWhole { factor: 1.0, text: String::new() }
-    }
 }
 
 /// Name and version of the program.
@@ -163,12 +138,6 @@ pub struct Accuracy {
     pub asked: f64,
     /// Largest relative bar of the entries under the demand [1].
     pub reached: f64,
-    /// Relative bar asked of maxima; none where no smooth electrode is under voltage [1].
-    #[serde(default)]
-    pub max_field_asked: Option<f64>,
-    /// Largest relative bar of a maximum of a smooth electrode [1].
-    #[serde(default)]
-    pub max_field_reached: Option<f64>,
 }
 
 /// One run-time check.
@@ -221,87 +190,20 @@ pub struct Part {
 pub struct Edge {
     /// Electrode name.
     pub part: String,
-    /// `edge`, or `seam`: only a turn from facet to facet of a surface taken as drawn.
-    #[serde(default = "edge_word")]
-    pub kind: String,
     /// Angle through the metal [degrees].
     pub angle_deg: f64,
     /// Exponent of distance in the field law, π/(2π−w) − 1 [1].
     pub exponent: f64,
     /// Voltage case.
     pub case: String,
-    /// K of E = K·s^exponent at the middle of the edge [V·m^(−1−exponent)].
+    /// K of E = K·s^exponent where it is highest along the edge [V·m^(−1−exponent)].
     pub strength: f64,
-    /// Its bar [V·m^(−1−exponent)].
-    #[serde(default)]
-    pub strength_bar: f64,
-    /// One end; of a closed edge, a place on it [m].
+    /// One end [m].
     pub from_metre: [f64; 3],
-    /// Other end; of a closed edge, the place half way around [m].
+    /// Other end [m].
     pub to_metre: [f64; 3],
-    /// Whether it comes back to its start.
-    #[serde(default)]
-    pub closed: bool,
-    /// Length [m].
-    #[serde(default)]
-    pub length_metre: f64,
-    /// K at several places along it.
-    #[serde(default)]
-    pub along: Vec<EdgePlace>,
-    /// The field law at stated distances, at the middle.
+    /// The field law at stated distances.
     pub field_at: Vec<FieldAt>,
-    /// Radius that the case declares for it [m].
-    #[serde(default)]
-    pub edge_radius_metre: Option<f64>,
-    /// Highest field on the rounding away from corners, if a radius is declared [V/m].
-    #[serde(default)]
-    pub field_v_per_m: Option<f64>,
-    /// Its bar [V/m].
-    #[serde(default)]
-    pub bar_v_per_m: Option<f64>,
-}
-
-/// The kind of an edge in records that do not say it.
-fn edge_word() -> String {
-    "edge".to_owned()
-}
-
-/// K at a place of an edge.
-#[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
-pub struct EdgePlace {
-    /// The place [m].
-    pub at_metre: [f64; 3],
-    /// K there [V·m^(−1−exponent)].
-    pub strength: f64,
-    /// Its bar [V·m^(−1−exponent)].
-    pub bar: f64,
-    /// Highest field on the declared rounding here, at least five radii from a corner [V/m].
-    #[serde(default)]
-    pub field_v_per_m: Option<f64>,
-    /// Its bar [V/m].
-    #[serde(default)]
-    pub bar_v_per_m: Option<f64>,
-}
-
-/// A corner at which sharp edges end: E ~ r^exponent.
-#[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
-pub struct Corner {
-    /// Electrode name.
-    pub part: String,
-    /// Voltage case.
-    pub case: String,
-    /// The corner [m].
-    pub at_metre: [f64; 3],
-    /// Exponent of distance [1].
-    pub exponent: f64,
-    /// Edges that end there.
-    pub edges: usize,
-    /// Radius that the case declares [m].
-    pub edge_radius_metre: Option<f64>,
-    /// Highest field on the rounding, if a radius is declared [V/m].
-    pub field_v_per_m: Option<f64>,
-    /// Its bar [V/m].
-    pub bar_v_per_m: Option<f64>,
 }
 
 /// Field at a distance from an edge.
@@ -366,7 +268,7 @@ pub struct Maximum {
     pub field_v_per_m: Option<f64>,
     /// Its bar [V/m].
     pub bar_v_per_m: Option<f64>,
-    /// Highest value of a panel, slivers together with their neighbours [V/m].
+    /// Highest panel value [V/m].
     pub raw_v_per_m: f64,
     /// Highest fitted field away from unbounded edges [V/m].
     pub smooth_v_per_m: Option<f64>,
@@ -374,15 +276,6 @@ pub struct Maximum {
     pub at_metre: [f64; 3],
     /// Principal curvatures there [1/m].
     pub curvature_per_metre: Option<[f64; 2]>,
-    /// Area with more than 90 % of it; none where the field is unbounded [m²].
-    #[serde(default)]
-    pub area_above_90_m2: Option<f64>,
-    /// Area with more than 80 % of it; none where the field is unbounded [m²].
-    #[serde(default)]
-    pub area_above_80_m2: Option<f64>,
-    /// The next separate maxima of the electrode, highest first.
-    #[serde(default)]
-    pub further: Vec<FurtherMaximum>,
     /// Limit, as a crest (or steady) value [V/m].
     pub limit_v_per_m: Option<f64>,
     /// `peak`, `rms` or `dc`: how the limit was given.
@@ -391,17 +284,6 @@ pub struct Maximum {
     pub margin: Option<f64>,
     /// `met`, `not_met`, `not_decided` or `no_limit`.
     pub judged: String,
-}
-
-/// A separate maximum that is not the highest of its electrode.
-#[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
-pub struct FurtherMaximum {
-    /// Fitted field [V/m].
-    pub field_v_per_m: f64,
-    /// Its bar [V/m].
-    pub bar_v_per_m: f64,
-    /// Place [m].
-    pub at_metre: [f64; 3],
 }
 
 /// Force on an electrode.
@@ -450,7 +332,7 @@ pub struct Effort {
     pub unknowns: usize,
     /// Rounds.
     pub rounds: usize,
-    /// `dense`, or `dense blocks of a ring` where copies repeat all round an axis.
+    /// `dense`.
     pub method: String,
     /// Seconds by phase [s].
     pub seconds: BTreeMap<String, f64>,

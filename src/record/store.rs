@@ -220,10 +220,6 @@ pub fn misfit(record: &Record) -> Option<&'static str> {
         ("earth_share", record.earth_share.len() == n),
         ("potential_coefficients_per_farad", square(&record.potential_coefficients_per_farad)),
         ("potential_coefficients_bar_per_farad", square(&record.potential_coefficients_bar_per_farad)),
-        (
-            "part_capacitance_farad",
-            record.part_capacitance_farad.is_empty() || square(&record.part_capacitance_farad),
-        ),
         ("looks", looks_fit),
         ("potentials_volt", cases(&|case| by_row(&case.potentials_volt))),
         ("potentials_bar_volt", cases(&|case| by_row(&case.potentials_bar_volt))),
@@ -245,8 +241,6 @@ fn lost_maximum(record: &Record) -> String {
                 ("bar_v_per_m", lost(m.bar_v_per_m)),
                 ("smooth_v_per_m", lost(m.smooth_v_per_m)),
                 ("limit_v_per_m", lost(m.limit_v_per_m)),
-                ("area_above_90_m2", lost(m.area_above_90_m2)),
-                ("area_above_80_m2", lost(m.area_above_80_m2)),
                 ("margin", lost(m.margin)),
             ];
             if let Some((key, _)) = fields.iter().find(|(_, lost)| *lost) {

@@ -13,7 +13,6 @@ use crate::record::Record;
 use crate::record::cautions::ESTIMATE;
 use crate::report::form::REFERENCE;
 use crate::report::form::clean;
-use crate::report::form::part_text;
 use crate::report::form::title;
 use crate::report::tables::judged;
 use std::io;
@@ -91,9 +90,6 @@ fn head(record: &Record, forms: &[Form], unit: &str, out: &mut dyn Write) -> io:
         writeln!(out, "# {} [{}]: {}", form.kind(), form.word(), form.sign_rule())?;
     }
     writeln!(out, "# reference: {REFERENCE}")?;
-    if let Some(text) = part_text(record) {
-        writeln!(out, "# part and whole: {text}")?;
-    }
     writeln!(out, "# unit: {unit}")?;
     writeln!(out, "# verdict {}: {ESTIMATE}", judged(&record.verdict.word))?;
     for caution in &record.cautions {

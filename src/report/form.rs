@@ -6,12 +6,6 @@ use crate::record::Record;
 /// What every table is counted from.
 pub const REFERENCE: &str = "earth planes and infinity are the 0 V reference";
 
-/// What the numbers count where mirrors stand; nothing without mirrors.
-pub fn part_text(record: &Record) -> Option<String> {
-    let text = clean(&record.part_of_whole.text);
-    (!text.is_empty()).then_some(text)
-}
-
 /// A form of the capacitance matrix.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
 pub enum Form {

@@ -60,7 +60,6 @@ pub fn head(record: &Record) -> Value {
         "title": title(record),
         "verdict": verdict,
         "accuracy": record.accuracy,
-        "part_of_whole": record.part_of_whole,
         "case_sha256": record.case.sha256,
     })
 }

@@ -8,7 +8,6 @@ use crate::record::cautions::CHARGED;
 use crate::record::cautions::ESTIMATE;
 use crate::report::form::REFERENCE;
 use crate::report::form::clean;
-use crate::report::form::part_text;
 use crate::report::form::title;
 use crate::report::tables;
 use std::collections::BTreeSet;
@@ -130,9 +129,6 @@ fn head(record: &Record, pins: &[String], out: &mut dyn Write) -> io::Result<()>
         "* capacitances between the electrodes and to earth [F], each smaller than its bar left out"
     )?;
     writeln!(out, "* reference: {REFERENCE}; pin `earth` is that reference")?;
-    if let Some(text) = part_text(record) {
-        writeln!(out, "* part and whole: {text}")?;
-    }
     writeln!(
         out,
         "* {} {}, case sha256 {}",

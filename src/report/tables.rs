@@ -11,7 +11,6 @@ use crate::report::digits;
 use crate::report::form::Form;
 use crate::report::form::REFERENCE;
 use crate::report::form::clean;
-use crate::report::form::part_text;
 use crate::report::form::title;
 use std::collections::BTreeMap;
 use std::f64::consts::SQRT_2;
@@ -117,18 +116,12 @@ pub fn head_text(record: &Record) -> String {
         let codes: Vec<String> = record.verdict.codes.iter().map(i32::to_string).collect();
         text += &format!("  exit codes that hold: {}\n", codes.join(", "));
     }
-    let part = part_text(record).map_or(String::new(), |text| format!("Part and whole\n  {text}\n\n"));
     let (asked, reached) = (record.accuracy.asked, record.accuracy.reached);
     let (asked, reached) = (digits::percent(asked, false), digits::percent(reached, false));
-    let maxima = record.accuracy.max_field_asked.zip(record.accuracy.max_field_reached);
-    let maxima = maxima.map_or_else(String::new, |(asked, reached)| {
-        let (asked, reached) = (digits::percent(asked, false), digits::percent(reached, false));
-        format!("  bar of the maxima on smooth electrodes: asked {asked}, reached {reached}\n")
-    });
     text + &format!(
-        "  bar of the capacitances: asked {asked}, reached {reached}\n{maxima}  case sha256 {}\n\n",
+        "  bar of the capacitances: asked {asked}, reached {reached}\n  case sha256 {}\n\n",
         clean(&record.case.sha256)
-    ) + &part
+    )
 }
 
 /// The caution of a floating electrode with its potential in one voltage case.
@@ -213,36 +206,10 @@ fn maximum_text(m: &Maximum, case: &VoltageCase, printing: &Printing) -> String 
             )
         }
     };
-    if m.field_v_per_m.is_some() {
-        text += &around_text(m, printing);
-    }
-    for further in m.further.iter().take(FURTHER) {
-        let at = format!("{} {}", digits::place(&further.at_metre, printing.length), printing.length_name);
-        text += &format!("      also {} at {at}\n", field(further.field_v_per_m, further.bar_v_per_m));
-    }
     if m.limit_v_per_m.is_some() || m.margin.is_some() || m.judged != "no_limit" {
         text += &limit_text(m, printing);
     }
     text
-}
-
-/// Further maxima of an electrode that are printed; the record holds more.
-const FURTHER: usize = 2;
-
-/// Curvatures and areas about a maximum.
-fn around_text(m: &Maximum, printing: &Printing) -> String {
-    let unit = &printing.length_name;
-    let curved = m.curvature_per_metre.map(|both| {
-        let [most, least] = both.map(|k| digits::significant(k * printing.length, 3));
-        format!("curvatures {most} and {least} per {unit}")
-    });
-    let areas = m.area_above_90_m2.zip(m.area_above_80_m2).map(|(most, more)| {
-        let [most, more] =
-            [most, more].map(|area| digits::significant(area / (printing.length * printing.length), 3));
-        format!("over 90 % of it on {most} {unit}², over 80 % on {more} {unit}²")
-    });
-    let parts: Vec<String> = [curved, areas].into_iter().flatten().collect();
-    if parts.is_empty() { String::new() } else { format!("      {}\n", parts.join("; ")) }
 }
 
 fn limit_text(m: &Maximum, printing: &Printing) -> String {
@@ -273,25 +240,18 @@ pub(crate) fn judged(word: &str) -> String {
 
 fn edge_text(edge: &Edge, case: &VoltageCase, printing: &Printing) -> String {
     let place = |at: &[f64; 3]| digits::place(at, printing.length);
-    let what = if edge.kind == "seam" { "seam between facets taken as drawn" } else { "unbounded at edge" };
-    let run = if edge.closed { "closed, through" } else { "from" };
     let mut text = format!(
-        "    {}: {what}, {} degrees through the metal, {run} {} {} {} {}\n",
+        "    {}: unbounded at edge, {} degrees through the metal, from {} to {} {}\n",
         clean(&edge.part),
         digits::significant(edge.angle_deg, 4),
         place(&edge.from_metre),
-        if edge.closed { "and" } else { "to" },
         place(&edge.to_metre),
         printing.length_name
     );
-    let strength = if 0.0 < edge.strength_bar {
-        digits::cell(edge.strength, edge.strength_bar)
-    } else {
-        digits::significant(edge.strength, 4)
-    };
     text += &format!(
-        "      E = K s^({}) with s the distance from the edge, K = {strength} V m^({})",
+        "      E = K s^({}) with s the distance from the edge, K = {} V m^({})",
         digits::significant(edge.exponent, 4),
+        digits::significant(edge.strength, 4),
         digits::significant(-1.0 - edge.exponent, 4)
     );
     for at in &edge.field_at {
@@ -301,17 +261,6 @@ fn edge_text(edge: &Edge, case: &VoltageCase, printing: &Printing) -> String {
         };
         let distance = digits::significant(at.distance_metre / printing.length, 4);
         text += &format!("; at {distance} {}: {}", printing.length_name, in_time(case, &show));
-    }
-    if let (Some(radius), Some(field), Some(bar)) =
-        (edge.edge_radius_metre, edge.field_v_per_m, edge.bar_v_per_m)
-    {
-        let show = |k: f64| {
-            let unit = &printing.field_name;
-            format!("{} {unit}", digits::cell(k * field / printing.field, k * bar / printing.field))
-        };
-        let radius = digits::significant(radius / printing.length, 4);
-        let unit = &printing.length_name;
-        text += &format!("; rounded with {radius} {unit}: {} away from corners", in_time(case, &show));
     }
     text + "\n"
 }

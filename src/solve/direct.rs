@@ -41,7 +41,7 @@ pub struct Factors {
     pub pivot_ratio: f64,
 }
 
-pub(super) fn par() -> Par {
+fn par() -> Par {
     #[cfg(feature = "parallel")]
     return Par::rayon(0);
     #[cfg(not(feature = "parallel"))]

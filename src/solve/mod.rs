@@ -5,5 +5,4 @@
 //! Symbols: `a` the matrix, `b` right sides, `n` unknowns.
 //! Reference: Golub and Van Loan, Matrix Computations, section 3.4.
 
-pub mod circulant;
 pub mod direct;

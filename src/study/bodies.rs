@@ -17,9 +17,9 @@ use crate::mesh::repair;
 use crate::mesh::shells;
 use crate::mesh::size;
 use crate::mesh::smooth;
+use crate::mesh::smooth::Smooth;
 use crate::mesh::stl;
 use crate::mesh::weld;
-use crate::mesh::whole;
 
 /// Facets of one file, solid by solid, in the unit of the file.
 pub(super) struct Read {
@@ -59,26 +59,10 @@ pub(super) fn bodies(case: &Case, shapes: &Shapes) -> Result<(Vec<Body>, Vec<Fin
     let read = read_all(shapes)?;
     let mut findings: Vec<Finding> = read.iter().flat_map(|read| read.findings.clone()).collect();
     let mut bodies = Vec::new();
-    let mut drawn = None;
     for electrode in &case.electrodes {
-        // The first of all copies is the one that is drawn; the others repeat no note of it.
-        let repeated = electrode.copy.as_ref().is_some_and(|copy| 0 < copy.number);
-        if !repeated {
-            drawn = match accepted(case, electrode, &read) {
-                Ok((surface, more)) => {
-                    findings.extend(more);
-                    Some(surface)
-                }
-                Err(more) => {
-                    findings.extend(more);
-                    None
-                }
-            };
-        }
-        let Some(surface) = &drawn else { continue };
-        match body(case, electrode, surface) {
+        match body(case, electrode, &read) {
             Ok((body, more)) => {
-                findings.extend(more.into_iter().filter(|_| !repeated));
+                findings.extend(more);
                 bodies.push(body);
             }
             Err(more) => findings.extend(more),
@@ -91,12 +75,7 @@ pub(super) fn bodies(case: &Case, shapes: &Shapes) -> Result<(Vec<Body>, Vec<Fin
     }
 }
 
-/// The surface of an electrode as it is drawn, in place.
-fn accepted(
-    case: &Case,
-    electrode: &Electrode,
-    read: &[Read],
-) -> Result<(Surface, Vec<Finding>), Vec<Finding>> {
+fn body(case: &Case, electrode: &Electrode, read: &[Read]) -> Result<(Body, Vec<Finding>), Vec<Finding>> {
     let solids = electrode.files.iter().flat_map(|k| &read[*k].solids);
     let chosen: Vec<Vec<[Vec3; 3]>> = match &electrode.shell {
         None => solids.cloned().collect(),
@@ -116,18 +95,6 @@ fn accepted(
             return Err(findings);
         }
     }
-    Ok((surface, findings))
-}
-
-/// The body of an electrode from its surface as drawn: moved where it is a copy, joined to what mirrors make of
-/// it, its smooth patches found.
-fn body(case: &Case, electrode: &Electrode, drawn: &Surface) -> Result<(Body, Vec<Finding>), Vec<Finding>> {
-    let mut surface = drawn.clone();
-    if let Some(copy) = electrode.copy.as_ref().filter(|copy| 0 < copy.number) {
-        let motion = copy.motion.times(copy.number);
-        surface.welded.points.iter_mut().for_each(|x| *x = motion.point(x));
-    }
-    let (surface, mut findings) = whole::whole(surface, &case.images, &electrode.name)?;
     let surface = smoothed(surface, electrode, &mut findings);
     Ok((Body { name: electrode.name.clone(), surface }, findings))
 }
@@ -171,9 +138,9 @@ fn select(
 /// Fills normals and creases and tells the sharpest ridge that is taken for faceting.
 fn smoothed(surface: Surface, electrode: &Electrode, findings: &mut Vec<Finding>) -> Surface {
     let angle = electrode.crease_angle.unwrap_or(smooth::CREASE_ANGLE);
-    let (surface, sharpest_smoothed) = match electrode.surface {
-        SurfaceKind::Rebuilt => smooth::rebuild(surface, angle),
-        SurfaceKind::AsDrawn => (smooth::keep(surface), None),
+    let Smooth { normals, creases, sharpest_smoothed } = match electrode.surface {
+        SurfaceKind::Rebuilt => smooth::recover(&surface.welded, angle),
+        SurfaceKind::AsDrawn => smooth::as_drawn(&surface.welded),
     };
     if let Some((turn, at)) = sharpest_smoothed {
         findings.push(Finding {
@@ -189,5 +156,6 @@ fn smoothed(surface: Surface, electrode: &Electrode, findings: &mut Vec<Finding>
             place: Some(at),
         });
     }
-    surface
+    let rims_as_drawn = electrode.surface == SurfaceKind::AsDrawn;
+    Surface { normals, creases, rims_as_drawn, ..surface }
 }

@@ -128,14 +128,14 @@ fn wrong_sign(solved: &Solved) -> f64 {
         let sign = |p: usize| if panels.row(p) == Some(j) { 1.0 } else { -1.0 };
         let wrong = |p: usize| (-sign(p) * density[p]).max(0.0) * panels.triangles[p].area();
         let total: f64 = (0..panels.len()).map(wrong).sum();
-        total * solved.permittivity_of_whole() / solved.matrix[j][j]
+        total * physics::permittivity(solved.eps_r) / solved.matrix[j][j]
     };
     (0..solved.n_rows()).map(of_row).fold(0.0, larger)
 }
 
 /// All rows together hold at least the capacitance of the ball of equal volume as the largest body
-/// (Pólya and Szegő, Isoperimetric Inequalities in Mathematical Physics, 1951), and without a plane
-/// at 0 V at most that of a ball around everything, copies included.
+/// (Pólya and Szegő, Isoperimetric Inequalities in Mathematical Physics, 1951), and without an earth
+/// plane at most that of a ball around everything.
 fn volume_checks(solved: &Solved, earth_bars: &[f64]) -> Vec<Check> {
     let panels = &solved.panels;
     let unit = 4.0 * PI * physics::permittivity(solved.eps_r);
@@ -158,11 +158,8 @@ fn volume_checks(solved: &Solved, earth_bars: &[f64]) -> Vec<Check> {
         ball / total,
         1.0 + bar,
     )];
-    if panels.images.grounded().next().is_none() {
-        let mut corners: Vec<Vec3> = panels.triangles.iter().flat_map(|tri| tri.corners).collect();
-        let copies: Vec<Vec3> =
-            panels.images.copies().iter().flat_map(|copy| corners.iter().map(|x| copy.point(x))).collect();
-        corners.extend(copies);
+    if panels.plane.is_none() {
+        let corners: Vec<Vec3> = panels.triangles.iter().flat_map(|tri| tri.corners).collect();
         let (lo, hi) = weld::bounds(&corners);
         let centre = (lo + hi) * 0.5;
         let radius = corners.iter().map(|p| (p - centre).norm()).fold(0.0, f64::max);
@@ -182,7 +179,7 @@ fn energy_check(solved: &Solved, case: &VoltageCase) -> Check {
     let rows = &solved.panels.assembly.rows;
     let v: Vec<f64> = rows.iter().map(|row| *case.potentials_volt.get(&row.name).unwrap_or(&0.0)).collect();
     let field = physics::field::normal_field(solved, &v);
-    let eps = solved.permittivity_of_whole();
+    let eps = physics::permittivity(solved.eps_r);
     let of_panel = |p: usize| {
         let volt = solved.panels.row(p).map_or(0.0, |row| v[row]);
         0.5 * volt * field[p] * eps * solved.panels.triangles[p].area()

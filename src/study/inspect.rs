@@ -4,10 +4,8 @@ use super::BodyLine;
 use super::Inspection;
 use super::StudyError;
 use super::bodies;
-use super::copies;
 use super::run;
 use crate::base::Finding;
-use crate::base::Images;
 use crate::base::Vec3;
 use crate::case::Case;
 use crate::case::Shapes;
@@ -41,21 +39,17 @@ pub fn inspect_case(case: &Case, shapes: &Shapes) -> Result<Inspection, StudyErr
         Ok(found) => found,
         Err(findings) => return Ok(Inspection { findings, ..empty() }),
     };
-    let drawn = drawn(case, shapes, &bodies);
-    let lines = drawn.iter().map(line).collect();
-    // Copies are not drawn.
-    let is_drawn = |n: usize| case.electrodes[n].copy.as_ref().is_none_or(|copy| copy.number == 0);
-    let repaired = drawn.iter().enumerate().filter(|(n, _)| is_drawn(*n));
-    let repaired = repaired.map(|(_, body)| (body.name.clone(), in_units(body, case.length_unit))).collect();
+    let lines = bodies.iter().map(line).collect();
+    let repaired = bodies.iter().map(|body| (body.name.clone(), in_units(body, case.length_unit))).collect();
+    let plane = case.earth_plane.as_ref().map(|earth| earth.plane);
     let mut effort = None;
-    match assembly::expose(bodies, &case.bonds, &case.images) {
+    match assembly::expose(bodies, &case.bonds, plane.as_ref()) {
         Ok(exposed) => {
             let pieces = exposed.pieces.len();
             let least = exposed.bodies.len() * EDGED_BODY;
             let panels =
                 if pieces < least { (GROWTH * pieces as f64).max(least as f64) as usize } else { pieces };
-            effort =
-                Some((panels, dense::bytes(panels, exposed.rows.len(), copies::sectors(case, &exposed))));
+            effort = Some((panels, dense::bytes(panels, exposed.rows.len())));
             findings.extend(exposed.findings);
         }
         Err(more) => findings.extend(more),
@@ -75,15 +69,6 @@ pub fn inspect_case(case: &Case, shapes: &Shapes) -> Result<Inspection, StudyErr
         });
     }
     Ok(Inspection { findings, bodies: lines, effort, repaired })
-}
-
-/// The bodies as they are drawn, without their copies across even mirrors.
-fn drawn(case: &Case, shapes: &Shapes, bodies: &[Body]) -> Vec<Body> {
-    if case.images.even().next().is_none() {
-        return bodies.to_vec();
-    }
-    let alone = Case { images: Images::none(), ..case.clone() };
-    bodies::bodies(&alone, shapes).map_or_else(|_| bodies.to_vec(), |(drawn, _)| drawn)
 }
 
 fn empty() -> Inspection {

@@ -6,10 +6,7 @@
 
 mod bodies;
 mod checks;
-mod copies;
-mod edges;
 mod inspect;
-mod part;
 mod prove;
 mod prove_shapes;
 mod record;
@@ -43,8 +40,6 @@ pub enum Event {
         reached: f64,
         /// Bar asked [1].
         asked: f64,
-        /// Largest relative bar of the maxima that steer, and the bar asked of them [1].
-        field: Option<(f64, f64)>,
         /// Estimated seconds left, if more rounds follow [s].
         left: Option<f64>,
     },

@@ -11,6 +11,7 @@ use crate::adapt::Limits;
 use crate::base::Plane;
 use crate::base::Vec3;
 use crate::mesh::Body;
+use crate::mesh::Surface;
 use crate::mesh::accept;
 use crate::mesh::assembly;
 use crate::mesh::smooth;
@@ -90,7 +91,9 @@ fn two_spheres() -> Result<Vec<ProveLine>, StudyError> {
     let source = "image series: Smythe, Static and Dynamic Electricity, ch. 5; Lekner 2011";
     let [own, mutual] = equal_balls(3.0).map(|c| UNIT_BALL * c);
     let sources = Sources::build(&solved.panels);
-    let peaks = field::peaks(&solved, &sources, &[0.5, -0.5]);
+    let (bars, _) = solved.bars();
+    let charge_bar = [0, 1].map(|row| bars[row][row].total() / solved.matrix[row][row]);
+    let peaks = field::peaks(&solved, &sources, &[0.5, -0.5], &charge_bar);
     let (found, bar) = peaks.first().map_or((f64::NAN, 0.0), |peak| (peak.field, peak.bar));
     Ok(vec![
         entry("two spheres, R = 1 m, gap 1 m: C11 [F]", source, &solved, (0, 0), own),
@@ -150,16 +153,18 @@ fn line(name: &str, source: &'static str, [exact, found, bar]: [f64; 3], widest:
 fn solved(bodies: Vec<Vec<[Vec3; 3]>>, sheet: bool, plane: Option<Plane>) -> Result<Solved, StudyError> {
     let accepted: Result<Vec<Body>, StudyError> =
         bodies.iter().enumerate().map(|(n, facets)| body(facets, sheet, &format!("body {n}"))).collect();
-    let assembly = assembly::expose(accepted?, &[], plane).map_err(StudyError::Refused)?;
-    let start = adapt::start(FIRST_PANELS, None, panel::build(Arc::new(assembly), plane));
+    let assembly = assembly::expose(accepted?, &[], plane.as_ref()).map_err(StudyError::Refused)?;
+    let start = adapt::at_least(FIRST_PANELS, panel::build(Arc::new(assembly), plane));
     let limits = Limits { max_panels: Some(MOST_PANELS), time: None, memory: f64::INFINITY };
-    let demand = Demand { capacitance: DEMAND, field: None };
+    let demand = Demand { capacitance: DEMAND };
     let finished = adapt::run(start, 1.0, demand, &limits, &|_| {});
     finished.map(|Finished { solved, .. }| solved).map_err(|error| StudyError::Singular(error.to_string()))
 }
 
 fn body(facets: &[[Vec3; 3]], sheet: bool, name: &str) -> Result<Body, StudyError> {
     let (surface, _) = accept::body(facets, sheet, name).map_err(StudyError::Refused)?;
-    let (surface, _) = smooth::rebuild(surface, smooth::CREASE_ANGLE);
+    let smooth = smooth::recover(&surface.welded, smooth::CREASE_ANGLE);
+    let surface =
+        Surface { normals: smooth.normals, creases: smooth.creases, rims_as_drawn: false, ..surface };
     Ok(Body { name: name.to_owned(), surface })
 }

@@ -3,7 +3,6 @@
 use super::Outcome;
 use super::StudyError;
 use super::checks;
-use super::part;
 use super::state::States;
 use super::voltage;
 use crate::adapt::Finished;
@@ -19,7 +18,9 @@ use crate::case::SurfaceKind;
 use crate::case::machine;
 use crate::circuit;
 use crate::mesh::Net;
+use crate::mesh::weld;
 use crate::operator::Sources;
+use crate::physics::edges;
 use crate::physics::field;
 use crate::physics::look;
 use crate::physics::solved::Bar;
@@ -65,7 +66,7 @@ pub(super) fn outcome(
         (0..m.len()).map(|i| (0..m.len()).map(|j| cell(i, j)).collect()).collect()
     };
     let reached = finished.reached;
-    let voltage = voltage::results(case, solved, &sources, states).map_err(singular)?;
+    let voltage = voltage::results(case, solved, &sources, states, &bar_matrix).map_err(singular)?;
     let checks = checks::checks(solved, &bar_matrix, &totals(&earth_bars), &inverse, &voltage.cases);
     let verdict = verdict(case, finished, reached, &voltage.cases, &checks);
     let record = Record {
@@ -89,27 +90,19 @@ pub(super) fn outcome(
         surface_file: FileHash { path: String::new(), sha256: String::new() },
         electrodes: solved.panels.assembly.rows.iter().map(|row| row.name.clone()).collect(),
         rows: rows(case, solved),
-        accuracy: Accuracy {
-            asked: case.accuracy.capacitance,
-            reached,
-            max_field_asked: finished.widest.map(|_| case.accuracy.max_field),
-            max_field_reached: finished.widest.map(|widest| widest.bar),
-        },
+        accuracy: Accuracy { asked: case.accuracy.capacitance, reached },
         earth_share: earth.iter().enumerate().map(|(i, c)| c / solved.matrix[i][i]).collect(),
         mutual_farad: circuit::mutual(&solved.matrix),
         mutual_bar_farad: without_diagonal(&bar_matrix),
-        part_of_whole: part::part_of_whole(case),
-        part_capacitance_farad: part::capacitance(solved),
         capacitance_farad: solved.matrix.clone(),
         capacitance_bar_farad: bar_matrix,
         earth_bar_farad: totals(&earth_bars),
         potential_coefficients_bar_per_farad: coefficient_bars(solved, &inverse),
         potential_coefficients_per_farad: inverse,
         checks,
-        findings: findings(case, solved, &voltage.findings),
+        findings: findings(case, solved),
         parts: parts(case, solved),
         edges: voltage.edges,
-        corners: voltage.corners,
         looks: voltage.looks,
         voltage_cases: voltage.cases,
         budget: budget(solved, &bars, &earth_bars, &earth),
@@ -146,20 +139,24 @@ fn rows(case: &Case, solved: &Solved) -> Vec<RowInfo> {
     solved.panels.assembly.rows.iter().map(info).collect()
 }
 
-/// A finding as it is stored.
-pub(super) fn stored(finding: &Finding) -> FindingRecord {
-    FindingRecord {
+fn findings(case: &Case, solved: &Solved) -> Vec<FindingRecord> {
+    let stored = |finding: &Finding| FindingRecord {
         severity: finding.severity.word().to_owned(),
         code: finding.code.to_owned(),
         text: finding.text.clone(),
         where_metre: finding.place.map(|p| [p.x, p.y, p.z]),
-    }
-}
-
-fn findings(case: &Case, solved: &Solved, more: &[Finding]) -> Vec<FindingRecord> {
+    };
     let mut all: Vec<FindingRecord> = solved.panels.assembly.findings.iter().map(stored).collect();
     all.extend(solved_findings(case, solved).iter().map(stored));
-    all.extend(more.iter().map(stored));
+    if case.accuracy.max_field.is_some() {
+        all.push(FindingRecord {
+            severity: "note".to_owned(),
+            code: "max_field_not_steered".to_owned(),
+            text: "`max_field` is read but does not steer the refinement yet; each maximum has its own bar"
+                .to_owned(),
+            where_metre: None,
+        });
+    }
     all
 }
 
@@ -222,7 +219,8 @@ fn parts(case: &Case, solved: &Solved) -> Vec<Part> {
     let panels = &solved.panels;
     let part = |(k, body): (usize, &crate::mesh::Body)| {
         let held: Vec<usize> = (0..panels.len()).filter(|p| panels.body[*p] as usize == k).collect();
-        let (facets, size) = part::drawn(&body.surface.welded, &panels.images);
+        let (lo, hi) = weld::bounds(&body.surface.welded.points);
+        let size = hi - lo;
         let surface = match case.electrodes[k].surface {
             SurfaceKind::Rebuilt => "rebuilt",
             SurfaceKind::AsDrawn => "as_drawn",
@@ -231,7 +229,7 @@ fn parts(case: &Case, solved: &Solved) -> Vec<Part> {
             name: body.name.clone(),
             kind: "electrode".to_owned(),
             surface: surface.to_owned(),
-            facets,
+            facets: body.surface.welded.facets.len(),
             panels: held.len(),
             area_m2: held.iter().map(|p| panels.triangles[*p].area()).sum(),
             size_metre: [size.x, size.y, size.z],
@@ -285,8 +283,7 @@ fn effort(finished: &Finished) -> Effort {
         panels,
         unknowns: panels,
         rounds: finished.rounds.len(),
-        method: if 1 < finished.solved.panels.copies() { "dense blocks of a ring" } else { "dense" }
-            .to_owned(),
+        method: "dense".to_owned(),
         seconds: BTreeMap::new(),
         peak_memory_bytes: machine::peak_memory().map_or(0, |bytes| bytes as u64),
         threads: threads::count(),
@@ -325,34 +322,20 @@ fn verdict(
             reasons.push(format!("field limit not decided: {}", undecided.join("; ")));
         }
     }
-    let wide = finished.widest.is_some_and(|widest| case.accuracy.max_field < widest.bar);
-    if case.accuracy.capacitance < reached || wide {
+    if finished.stop != Stop::Met {
         codes.push(3);
         let why = match finished.stop {
             Stop::MaxPanels => "`max_panels` left no room for another round; raise it",
             Stop::Time => "another round would not have fitted into `time_limit`; raise it",
             Stop::Memory => "another round would not have fitted into the memory; raise `memory_limit`",
-            Stop::Stalled => "smaller panels there no longer narrow it; facets drawn finer may",
             Stop::Met | Stop::NothingToCut => "no panel was left to cut",
         };
-        if case.accuracy.capacitance < reached {
-            reasons.push(format!(
-                "capacitance: a bar of {:.3} % was asked and {:.3} % reached: {why}; {}",
-                100.0 * case.accuracy.capacitance,
-                100.0 * reached,
-                worst_entry(&finished.solved)
-            ));
-        }
-        if let Some(widest) = finished.widest.filter(|widest| case.accuracy.max_field < widest.bar) {
-            let (body, in_case) = (&finished.solved.panels.assembly.bodies[widest.body], &cases[widest.case]);
-            reasons.push(format!(
-                "maximum field: a bar of {:.3} % was asked and {:.3} % reached on {} in {}: {why}",
-                100.0 * case.accuracy.max_field,
-                100.0 * widest.bar,
-                body.name,
-                in_case.name
-            ));
-        }
+        reasons.push(format!(
+            "capacitance: a bar of {:.3} % was asked and {:.3} % reached: {why}; {}",
+            100.0 * case.accuracy.capacitance,
+            100.0 * reached,
+            worst_entry(&finished.solved)
+        ));
     }
     let certain = codes.contains(&5) || codes.contains(&3) || !over.is_empty();
     let word = if codes.is_empty() {
@@ -411,9 +394,49 @@ pub(super) fn medium_name(medium: look::Medium, solved: &Solved) -> String {
     match medium {
         look::Medium::Surroundings => "surroundings".to_owned(),
         look::Medium::BehindEarth => "behind earth".to_owned(),
-        look::Medium::Opposite(body) => {
-            format!("opposite copy of {}", solved.panels.assembly.bodies[body].name)
-        }
         look::Medium::Metal(body) => solved.panels.assembly.bodies[body].name.clone(),
     }
+}
+
+/// Edges with an unbounded field in one voltage case, strongest first within each part.
+pub(super) fn edge_records(case_name: &str, solved: &Solved, potentials: &[f64]) -> Vec<crate::record::Edge> {
+    let normal = field::normal_field(solved, potentials);
+    let mut sharp = edges::sharp_edges(solved, &normal);
+    sharp.sort_by(|a, b| a.body.cmp(&b.body).then(b.strength.total_cmp(&a.strength)));
+    let mut kept: BTreeMap<usize, usize> = BTreeMap::new();
+    sharp.retain(|edge| {
+        let count = kept.entry(edge.body).or_default();
+        *count += 1;
+        *count <= MOST_EDGES
+    });
+    let record = |edge: &edges::SharpEdge| crate::record::Edge {
+        part: solved.panels.assembly.bodies[edge.body].name.clone(),
+        angle_deg: edge.angle.to_degrees(),
+        exponent: edge.exponent,
+        case: case_name.to_owned(),
+        strength: edge.strength,
+        from_metre: edge.ends[0].into(),
+        to_metre: edge.ends[1].into(),
+        field_at: field_at(solved, edge),
+    };
+    sharp.iter().map(record).collect()
+}
+
+/// Edges stored for each part and voltage case: the strongest.
+const MOST_EDGES: usize = 12;
+
+/// Distances at which the field law is stated, in sizes of the part [1].
+const STATED: [f64; 3] = [1e-3, 3e-3, 1e-2];
+
+fn field_at(solved: &Solved, edge: &edges::SharpEdge) -> Vec<crate::record::FieldAt> {
+    let (lo, hi) = weld::bounds(&solved.panels.assembly.bodies[edge.body].surface.welded.points);
+    let size = (hi - lo).max();
+    let at = |share: &f64| {
+        let distance_metre = share * size;
+        crate::record::FieldAt {
+            distance_metre,
+            field_v_per_m: edge.strength * distance_metre.powf(edge.exponent),
+        }
+    };
+    STATED.iter().map(at).collect()
 }

@@ -4,12 +4,9 @@ use super::Event;
 use super::Outcome;
 use super::StudyError;
 use super::bodies;
-use super::copies;
 use super::record;
 use super::state;
-use super::state::States;
 use crate::adapt;
-use crate::adapt::Aim;
 use crate::adapt::Demand;
 use crate::adapt::Finished;
 use crate::adapt::Limits;
@@ -18,13 +15,10 @@ use crate::base::threads;
 use crate::case::Case;
 use crate::case::Shapes;
 use crate::case::machine;
-use crate::circuit;
 use crate::mesh::Assembly;
 use crate::mesh::assembly;
 use crate::operator::dense;
 use crate::panel;
-use crate::panel::Panels;
-use crate::physics::capacitance::Matrix;
 use std::collections::BTreeMap;
 use std::sync::Arc;
 use std::time::Instant;
@@ -57,16 +51,14 @@ fn run_here(case: &Case, shapes: &Shapes, progress: &(dyn Fn(&Event) + Sync)) ->
         clock = Instant::now();
     };
     progress(&Event::Phase("inspect"));
-    let assembly = assemble(case, shapes)?;
+    let assembly = Arc::new(assemble(case, shapes)?);
     let states = state::states(case, &assembly).map_err(StudyError::Refused)?;
-    let (panels, note) = copies::arranged(case, panel::build(Arc::new(assembly), &case.images));
     lap(&mut seconds, "inspect");
     progress(&Event::Phase("refine"));
-    let finished = refine(case, panels, &states, progress)?;
+    let finished = refine(case, assembly, progress)?;
     lap(&mut seconds, "refine");
     progress(&Event::Phase("results"));
-    let mut outcome = record::outcome(case, shapes, &finished, &states)?;
-    outcome.record.findings.extend(note.iter().map(record::stored));
+    let outcome = record::outcome(case, shapes, &finished, &states)?;
     lap(&mut seconds, "results");
     Ok(with_seconds(outcome, seconds))
 }
@@ -82,7 +74,8 @@ fn with_seconds(mut outcome: Outcome, seconds: Seconds) -> Outcome {
 /// [`StudyError::Refused`] with all findings.
 pub(super) fn assemble(case: &Case, shapes: &Shapes) -> Result<Assembly, StudyError> {
     let (bodies, mut findings) = bodies::bodies(case, shapes).map_err(StudyError::Refused)?;
-    match assembly::expose(bodies, &case.bonds, &case.images) {
+    let plane = case.earth_plane.as_ref().map(|earth| earth.plane);
+    match assembly::expose(bodies, &case.bonds, plane.as_ref()) {
         Ok(assembly) => {
             findings.extend(assembly.findings);
             if assembly.rows.is_empty() {
@@ -106,25 +99,19 @@ pub(super) fn memory_limit(case: &Case) -> f64 {
     case.accuracy.memory_limit.unwrap_or_else(free)
 }
 
-/// Most panels of the first round: what is allowed, and what half the memory holds.
-fn most_at_first(case: &Case) -> usize {
-    let held = (0.5 * memory_limit(case) / 8.0).sqrt();
-    case.accuracy.max_panels.unwrap_or(usize::MAX).min(held as usize)
-}
-
 fn refine(
     case: &Case,
-    panels: Panels,
-    states: &[States],
+    assembly: Arc<Assembly>,
     progress: &(dyn Fn(&Event) + Sync),
 ) -> Result<Finished, StudyError> {
-    let start = adapt::start(FIRST_PANELS, Some(most_at_first(case)), panels);
+    let plane = case.earth_plane.as_ref().map(|earth| earth.plane);
+    let start = adapt::at_least(FIRST_PANELS, panel::build(assembly, plane));
     let limits = Limits {
         max_panels: case.accuracy.max_panels,
         time: case.accuracy.time_limit,
         memory: memory_limit(case),
     };
-    let needed = dense::bytes(start.len(), start.n_rows, start.copies());
+    let needed = dense::bytes(start.len(), start.n_rows);
     if limits.memory < needed {
         return Err(StudyError::Memory {
             panels: start.len(),
@@ -139,18 +126,10 @@ fn refine(
             panels: round.panels,
             reached: round.reached,
             asked,
-            field: round.field.map(|reached| (reached, case.accuracy.max_field)),
             left: round.next,
         });
     };
-    // A matrix that settles no state is told with the results; until then there is no maximum to aim at.
-    let settled = |matrix: &Matrix| -> Vec<Vec<f64>> {
-        let settle = |states: &States| circuit::settle(matrix, &states.rows, &states.groups);
-        let all: Result<Vec<_>, _> = states.iter().map(settle).collect();
-        all.map_or_else(|_| Vec::new(), |all| all.into_iter().map(|s| s.potentials).collect())
-    };
-    let aim = Aim { max_field: case.accuracy.max_field, potentials: &settled };
-    let demand = Demand { capacitance: asked, field: (!states.is_empty()).then_some(aim) };
+    let demand = Demand { capacitance: asked };
     adapt::run(start, case.relative_permittivity, demand, &limits, &tell)
         .map_err(|error| StudyError::Singular(error.to_string()))
 }

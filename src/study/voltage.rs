@@ -1,10 +1,8 @@
 //! Results of the voltage cases.
 
-use super::edges::Edges;
-use super::edges::Top;
+use super::record::edge_records;
 use super::record::medium_name;
 use super::state::States;
-use crate::base::Finding;
 use crate::case::Case;
 use crate::case::Electrode;
 use crate::case::ValueIs;
@@ -14,13 +12,11 @@ use crate::circuit::Settled;
 use crate::circuit::State;
 use crate::operator::Sources;
 use crate::physics::field;
+use crate::physics::field::Kind;
 use crate::physics::field::Peak;
 use crate::physics::look;
 use crate::physics::solved::Solved;
-use crate::physics::solved::unit_weight;
-use crate::record::Corner;
 use crate::record::Edge;
-use crate::record::FurtherMaximum;
 use crate::record::Look;
 use crate::record::Maximum;
 use crate::record::VoltageCase;
@@ -30,9 +26,6 @@ use std::collections::BTreeMap;
 pub(super) struct Voltage {
     pub(super) cases: Vec<VoltageCase>,
     pub(super) edges: Vec<Edge>,
-    pub(super) corners: Vec<Corner>,
-    /// What the edges tell: one of a kind for each body.
-    pub(super) findings: Vec<Finding>,
     pub(super) looks: Vec<Look>,
     /// Row potentials of each case [V].
     pub(super) potentials: Vec<Vec<f64>>,
@@ -47,6 +40,7 @@ pub(super) fn results(
     solved: &Solved,
     sources: &Sources,
     states: &[States],
+    bars: &[Vec<f64>],
 ) -> Result<Voltage, CircuitError> {
     let map = look::Map::new(&solved.panels);
     let media = |points: &[crate::base::Vec3]| -> Vec<String> {
@@ -63,30 +57,16 @@ pub(super) fn results(
             field_v_per_m: BTreeMap::new(),
         })
         .collect();
-    let (mut cases, mut potentials) = (Vec::new(), Vec::new());
-    let (mut edges, mut corners, mut findings) = (Vec::new(), Vec::new(), Vec::<Finding>::new());
-    let n = solved.n_rows();
-    let relative = |i: usize| {
-        let u = unit_weight(i, n);
-        solved.bar(&u, &u).total() / solved.matrix[i][i].abs()
-    };
-    let charge_bars: Vec<f64> = (0..n).map(relative).collect();
-    let sharp = Edges::find(case, solved, sources, &charge_bars);
-    let survey = field::survey(&solved.panels);
+    let (mut cases, mut edges, mut potentials) = (Vec::new(), Vec::new(), Vec::new());
+    let charge_bars: Vec<f64> =
+        (0..solved.n_rows()).map(|i| bars[i][i] / solved.matrix[i][i].abs()).collect();
     for (voltages, states) in case.voltage_cases.iter().zip(states) {
         let settled = circuit::settle(&solved.matrix, &states.rows, &states.groups)?;
-        let peaks = field::surveyed_peaks(&survey, solved, sources, &settled.potentials);
-        let found = sharp.at(&voltages.name, &settled.potentials);
-        let one_of = |peak: &Peak| maximum(&case.electrodes[peak.body], peak, found.tops[peak.body]);
-        let maxima = peaks.iter().map(one_of).collect();
+        let peaks = field::peaks(solved, sources, &settled.potentials, &charge_bars);
+        let maxima = peaks.iter().map(|peak| maximum(&case.electrodes[peak.body], peak)).collect();
         let floating = floating(states);
         cases.push(one(&voltages.name, voltages.value_is, solved, &settled, &floating, maxima));
-        edges.extend(found.edges);
-        corners.extend(found.corners);
-        // The same place in another case says nothing new.
-        let new = |f: &Finding| findings.iter().all(|other| other.code != f.code || other.place != f.place);
-        let new: Vec<Finding> = found.findings.into_iter().filter(new).collect();
-        findings.extend(new);
+        edges.extend(edge_records(&voltages.name, solved, &settled.potentials));
         for (look, record) in case.looks.iter().zip(&mut looks) {
             let seen = look::look(solved, sources, &map, &settled.potentials, &look.points);
             record.potential_volt.insert(voltages.name.clone(), seen.iter().map(|s| s.potential).collect());
@@ -95,7 +75,7 @@ pub(super) fn results(
         }
         potentials.push(settled.potentials);
     }
-    Ok(Voltage { cases, edges, corners, findings, looks, potentials })
+    Ok(Voltage { cases, edges, looks, potentials })
 }
 
 /// Rows whose potential is found, not given.
@@ -151,48 +131,30 @@ pub(super) fn word(value_is: ValueIs) -> &'static str {
     }
 }
 
-/// A maximum against its limit; `top` is what the edges make of it.
-fn maximum(electrode: &Electrode, peak: &Peak, top: Top) -> Maximum {
-    let rounded = if let Top::Rounded(rounded, at, _) = top { Some((rounded, at)) } else { None };
-    let bounded = rounded.is_some() || top == Top::NoEdge;
-    let [field, bar] = rounded.map_or([peak.field, peak.bar], |(r, _)| [r.field, r.bar]);
-    let kind = match top {
-        Top::Rounded(_, _, kind) | Top::Unbounded(kind) => kind,
-        Top::NoEdge => "smooth",
-    };
+/// A maximum against its limit.
+fn maximum(electrode: &Electrode, peak: &Peak) -> Maximum {
+    let bounded = peak.kind == Kind::Smooth;
     let limit = electrode.field_limit;
     let judged = match limit {
         None => "no_limit",
         // Off the edges alone it is over already; at the edge it is more.
-        Some((limit, _)) if limit < field - bar => "not_met",
-        Some((limit, _)) if bounded && field + bar <= limit => "met",
+        Some((limit, _)) if limit < peak.field - peak.bar => "not_met",
+        Some((limit, _)) if bounded && peak.field + peak.bar <= limit => "met",
         Some(_) => "not_decided",
     };
-    let at = rounded.map_or(peak.at, |(_, at)| at);
     Maximum {
         electrode: electrode.name.clone(),
-        kind: kind.to_owned(),
-        field_v_per_m: bounded.then_some(field),
-        bar_v_per_m: bounded.then_some(bar),
+        kind: if bounded { "smooth" } else { "edge" }.to_owned(),
+        field_v_per_m: bounded.then_some(peak.field),
+        bar_v_per_m: bounded.then_some(peak.bar),
         raw_v_per_m: peak.raw,
-        smooth_v_per_m: rounded.is_none().then_some(peak.field),
-        at_metre: [at.x, at.y, at.z],
-        curvature_per_metre: if rounded.is_some() { None } else { peak.curvature },
-        area_above_90_m2: peak.area_above.map(|[most, _]| most),
-        area_above_80_m2: peak.area_above.map(|[_, more]| more),
-        further: peak.further.iter().map(further).collect(),
+        smooth_v_per_m: bounded.then_some(peak.field),
+        at_metre: [peak.at.x, peak.at.y, peak.at.z],
+        curvature_per_metre: peak.curvature,
         limit_v_per_m: limit.map(|(limit, _)| limit),
         limit_is: limit.map(|(_, is)| word(is).to_owned()),
         // A field under its bar leaves no margin that means anything.
-        margin: limit.filter(|_| bounded && bar < field).map(|(limit, _)| limit / field - 1.0),
+        margin: limit.filter(|_| bounded && peak.bar < peak.field).map(|(limit, _)| limit / peak.field - 1.0),
         judged: judged.to_owned(),
-    }
-}
-
-fn further(further: &field::Further) -> FurtherMaximum {
-    FurtherMaximum {
-        field_v_per_m: further.field,
-        bar_v_per_m: further.bar,
-        at_metre: [further.at.x, further.at.y, further.at.z],
     }
 }

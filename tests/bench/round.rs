@@ -7,11 +7,9 @@
 
 use amberskin::adapt;
 use amberskin::base::Vec3;
-use amberskin::geom::Triangle;
 use amberskin::mesh::Assembly;
 use amberskin::mesh::Body;
 use amberskin::mesh::Net;
-use amberskin::mesh::Patches;
 use amberskin::mesh::Piece;
 use amberskin::mesh::Row;
 use amberskin::mesh::Surface;
@@ -45,9 +43,9 @@ fn three_cubes(most: usize) -> Panels {
     };
     let pieces = (0..3).flat_map(|k| (0..12).map(move |f| (k, f))).map(|(k, f)| piece(k, f)).collect();
     let assembly = Assembly { rows, pieces, findings: Vec::new(), bodies };
-    let start = adapt::start(60, None, panel::build(Arc::new(assembly), None));
+    let start = adapt::at_least(60, panel::build(Arc::new(assembly), None));
     let limits = adapt::Limits { max_panels: Some(most), time: None, memory: 1e11 };
-    let finished = adapt::run(start, 1.0, adapt::Demand { capacitance: 1e-9, field: None }, &limits, &|_| ());
+    let finished = adapt::run(start, 1.0, adapt::Demand { capacitance: 1e-9 }, &limits, &|_| ());
     finished.expect("three cubes can be solved").solved.panels
 }
 
@@ -58,15 +56,14 @@ fn cube(name: &str, shift: f64) -> Body {
     let faces = [[0, 2, 3, 1], [4, 5, 7, 6], [0, 1, 5, 4], [2, 6, 7, 3], [0, 4, 6, 2], [1, 3, 7, 5]];
     let facets = faces.iter().flat_map(|&[a, b, c, d]| [[a, b, c], [a, c, d]]).collect();
     let welded = Welded { points, facets };
-    let normals = welded
-        .facets
-        .iter()
-        .map(|f| [Triangle::new(f.map(|k| welded.points[k as usize])).normal(); 3])
-        .collect();
-    let patches = Patches::none(welded.facets.len());
-    let surface =
-        Surface { welded, sheet: false, normals, patches, creases: Vec::new(), rims_as_drawn: true };
-    let (surface, _) = smooth::rebuild(surface, smooth::CREASE_ANGLE);
+    let smooth = smooth::recover(&welded, smooth::CREASE_ANGLE);
+    let surface = Surface {
+        welded,
+        sheet: false,
+        normals: smooth.normals,
+        creases: smooth.creases,
+        rims_as_drawn: false,
+    };
     Body { name: name.to_owned(), surface }
 }
 

@@ -307,7 +307,7 @@ fn a_body_on_the_earth_plane_is_cut_there() {
                     if turned { (bodies::moved(&unit_box(n), turn), turn(&up)) } else { (unit_box(n), up) };
                 let earth = plane(facing * sunk, facing);
                 let assembly =
-                    expose(vec![solid("foot", &facets)], &bond(&["foot", "earth"]), Some(earth)).unwrap();
+                    expose(vec![solid("foot", &facets)], &bond(&["foot", "earth"]), Some(&earth)).unwrap();
                 assert_area(&assembly, expected);
                 assert!(assembly.rows.is_empty() && assembly.bodies.len() == 1, "earth has no row");
                 assert!(assembly.pieces.iter().all(|p| p.net == Net::Earth), "net");
@@ -322,7 +322,8 @@ fn a_body_on_the_earth_plane_is_cut_there() {
 #[test]
 fn a_cube_cut_along_its_diagonal_keeps_half() {
     let earth = plane(Vec3::zeros(), vec3(1.0, -1.0, 0.0));
-    let assembly = expose(vec![solid("foot", &unit_box(2))], &bond(&["foot", "earth"]), Some(earth)).unwrap();
+    let assembly =
+        expose(vec![solid("foot", &unit_box(2))], &bond(&["foot", "earth"]), Some(&earth)).unwrap();
     assert_area(&assembly, 3.0);
 }
 
@@ -331,7 +332,7 @@ fn only_what_touches_the_foot_belongs_to_earth() {
     let at = |z: f64| bodies::moved(&unit_box(2), move |p| p + vec3(0.0, 0.0, z));
     let all = vec![solid("foot", &at(0.0)), solid("post", &at(1.0)), solid("cap", &at(4.0))];
     let earth = plane(Vec3::zeros(), vec3(0.0, 0.0, 1.0));
-    let assembly = expose(all, &bond(&["foot", "earth", "cap", "post"]), Some(earth)).unwrap();
+    let assembly = expose(all, &bond(&["foot", "earth", "cap", "post"]), Some(&earth)).unwrap();
     assert_area(&assembly, 4.0 + 5.0 + 6.0);
     assert_eq!(assembly.rows.len(), 1);
     assert_eq!(assembly.rows[0].name, "cap");
@@ -341,10 +342,10 @@ fn only_what_touches_the_foot_belongs_to_earth() {
 #[test]
 fn bodies_at_or_behind_the_plane_are_refused() {
     let earth = plane(Vec3::zeros(), vec3(0.0, 0.0, 1.0));
-    let standing = expose(vec![solid("foot", &unit_box(1))], &[], Some(earth));
+    let standing = expose(vec![solid("foot", &unit_box(1))], &[], Some(&earth));
     assert!(refusal(&standing, "meets_earth").text.contains("bond `foot` with `earth`"), "{standing:?}");
     let turned = plane(vec3(0.0, 0.0, 2.0), vec3(0.0, 0.0, 1.0));
-    let behind = expose(vec![solid("foot", &unit_box(1))], &[], Some(turned));
+    let behind = expose(vec![solid("foot", &unit_box(1))], &[], Some(&turned));
     let text = &refusal(&behind, "behind_earth").text;
     assert!(text.contains("faces [0, 0, 1]") && text.contains("turn `facing` to [0, 0, -1]"), "{text}");
 }
@@ -402,7 +403,7 @@ fn degenerate_input_does_not_panic() {
         for pair in [vec![solid("a", &facets), solid("b", &unit_box(1))], vec![sheet("a", &facets)]] {
             let earth = plane(Vec3::zeros(), vec3(0.0, 0.0, 1.0));
             let _either: Result<Assembly, Vec<Finding>> =
-                expose(pair, &bond(&["a", "b", "earth"]), Some(earth));
+                expose(pair, &bond(&["a", "b", "earth"]), Some(&earth));
         }
     }
     let none: Vec<Body> = Vec::new();

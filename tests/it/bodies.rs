@@ -3,7 +3,6 @@
 use amberskin::base::Vec3;
 use amberskin::geom::Triangle;
 use amberskin::mesh::Body;
-use amberskin::mesh::Patches;
 use amberskin::mesh::Surface;
 use amberskin::mesh::Welded;
 use std::collections::BTreeMap;
@@ -106,8 +105,7 @@ pub(crate) fn surface(facets: &Facets, sheet: bool) -> Surface {
         }));
     }
     let normals = triangles(facets).iter().map(|t| [t.normal(); 3]).collect();
-    let patches = Patches::none(welded.facets.len());
-    Surface { welded, sheet, normals, patches, creases: Vec::new(), rims_as_drawn: true }
+    Surface { welded, sheet, normals, creases: Vec::new(), rims_as_drawn: true }
 }
 
 pub(crate) fn solid(name: &str, facets: &Facets) -> Body {

@@ -34,9 +34,7 @@ const BROKEN: &[(&str, &str, &[&str])] = &[
     ("length = \"mm\"", "lenght = \"mm\"", &["line 2, column 1", "`lenght`", "did you mean `length`?"]),
     ("potentials = ", "potental = ", &["line 14", "`potental`", "`potentials`"]),
     ("[[electrode]]", "[[electrod]]", &["line 3", "`electrod`", "`electrode`"]),
-    ("role = \"live\"", "edge_radius = \"-1 mm\"", &["line 6", "`edge_radius`", "above zero"]),
-    ("role = \"live\"", "edge_radius = \"1 kV\"", &["line 6", "`edge_radius`", "mm"]),
-    ("role = \"live\"", "edge_radius = nan", &["line 6", "`edge_radius`", "a length above zero"]),
+    ("role = \"live\"", "edge_radius = \"1 mm\"", &["line 6", "`edge_radius`", "planned but not available"]),
     ("[units]", "[[dielectric]]\nname = \"x\"\n[units]", &["line 1", "`dielectric`", "planned"]),
     ("role = \"live\"", "quux = 1", &["line 6", "`quux`", "accepted are `name`, `shape`"]),
     ("role = \"live\"", "place = { shfit = [1, 2, 3] }", &["line 6", "`shfit` in place", "`shift`"]),
@@ -126,51 +124,8 @@ const ADDED: &[(&str, &[&str])] = &[
     ("[[earth_plane]]\nthrough = [0, 0, 0]", &["line 1", "has no `facing`"]),
     ("[[earth_plane]]\nthrough = [0, 0, 0]\nfacing = [0, 0, 0]", &["line 3", "`facing`", "direction"]),
     (
-        "[[earth_plane]]\nthrough = [0, 0, 0]\nfacing = [0, 0, 1]\n[[earth_plane]]\nthrough = [0, 0, 9]\nfacing = [0, 0, -1]",
-        &["line 4", "`plane 2` is parallel to the earth plane `plane 1`", "one per direction"],
-    ),
-    (
-        "[[earth_plane]]\nthrough = [0, 0, 0]\nfacing = [0, 0, 1]\n[[mirror]]\nname = \"m\"\nthrough = [0, 0, 0]\nfacing = [0, 1, 1]\nparity = \"even\"",
-        &["line 4", "the mirror `m` meets the earth plane `plane` at 45 degrees", "right angles"],
-    ),
-    (
-        "[[mirror]]\nname = \"m\"\nthrough = [0, 0, 0]\nfacing = [0, 1, 0]",
-        &["line 1", "has no `parity`", "`odd`"],
-    ),
-    (
-        "[[mirror]]\nname = \"m\"\nthrough = [0, 0, 0]\nfacing = [0, 1, 0]\nparity = \"evn\"",
-        &["line 5", "`parity` cannot be `evn`", "did you mean `even`"],
-    ),
-    (
-        "[[mirror]]\nthrough = [0, 0, 0]\nfacing = [0, 1, 0]\nparity = \"odd\"",
-        &["line 1", "a [[mirror]] has no `name`"],
-    ),
-    (
-        "[[mirror]]\nname = \"m\"\nthrough = [0, 0, 0]\nfacing = [0, 1, 0]\nparity = \"odd\"\n[[mirror]]\nname = \"m\"\nthrough = [0, 0, 0]\nfacing = [1, 0, 0]\nparity = \"odd\"",
-        &["line 6", "`m` is there twice"],
-    ),
-    ("[[copies]]\nof = \"ball\"\ncount = 3", &["line 1", "exactly one of `rotate` and `step`; it has 0"]),
-    (
-        "[[copies]]\nof = \"bal\"\ncount = 3\nstep = [1, 0, 0]",
-        &["line 2", "`of`: no electrode is called `bal`", "`ball`"],
-    ),
-    (
-        "[[copies]]\nof = \"ball\"\ncount = 1\nstep = [1, 0, 0]",
-        &["line 3", "`count` cannot be 1", "from 2 to 1000"],
-    ),
-    ("[[copies]]\nof = \"ball\"\nstep = [1, 0, 0]", &["line 1", "has no `count`"]),
-    ("[[copies]]\nof = \"ball\"\ncount = 3\nstep = [0, 0, 0]", &["line 4", "`step`", "not zero"]),
-    (
-        "[[copies]]\nof = \"ball\"\ncount = 3\nrotate = { axis = [0, 0, 1], angle = \"180 deg\" }",
-        &["line 4", "`angle`", "within one turn"],
-    ),
-    (
-        "[[copies]]\nof = \"ball\"\ncount = 3\nrotate = { angle = \"30 deg\" }",
-        &["line 4", "rotate has no `axis`"],
-    ),
-    (
-        "[[copies]]\nof = \"ball\"\ncount = 3\nstep = [1, 0, 0]\n[[copies]]\nof = \"ball\"\ncount = 2\nstep = [0, 1, 0]",
-        &["line 6", "`ball` is there twice"],
+        "[[earth_plane]]\nthrough = [0, 0, 0]\nfacing = [0, 0, 1]\n[[earth_plane]]\nthrough = [0, 0, 0]\nfacing = [0, 1, 0]",
+        &["line 4", "only one [[earth_plane]]"],
     ),
     ("[[look]]\nname = \"l\"", &["line 2", "exactly one of `point`, `line` and `sheet`"]),
     ("[[look]]\nname = \"l\"\nline = { from = [0, 0, 0], to = [1, 0, 0] }", &["line 3", "has no `points`"]),

@@ -38,12 +38,7 @@ pub(crate) fn record() -> Record {
         rows: [("ball", "live"), ("tap", "floating"), ("foot", "earthed")]
             .map(|(name, role)| RowInfo { members: vec![name.into()], role: role.into() })
             .to_vec(),
-        accuracy: Accuracy {
-            asked: 5e-3,
-            reached: 3.1e-3,
-            max_field_asked: Some(0.02),
-            max_field_reached: Some(0.009),
-        },
+        accuracy: Accuracy { asked: 5e-3, reached: 3.1e-3 },
         earth_share: earth.iter().zip(&c).enumerate().map(|(i, (e, row))| e / row[i]).collect(),
         mutual_farad: circuit::mutual(&c),
         mutual_bar_farad: flat(2.1e-15),
@@ -52,14 +47,11 @@ pub(crate) fn record() -> Record {
         potential_coefficients_per_farad: circuit::inverse(&c).unwrap(),
         potential_coefficients_bar_per_farad: flat(2.4e8),
         capacitance_bar_farad: flat(7.3e-15),
-        part_of_whole: PartOfWhole::default(),
-        part_capacitance_farad: c.clone(),
         capacitance_farad: c,
         checks: vec![Check { name: "asymmetry [1]".into(), value: 2.1e-7, limit: 1e-4, pass: true }],
         findings: findings(),
         parts: vec![part()],
         edges: vec![edge()],
-        corners: Vec::new(),
         looks: vec![look()],
         voltage_cases: vec![crest_case(), rms_case()],
         budget: Budget { entries: vec![budget_line()] },
@@ -111,24 +103,10 @@ fn part() -> Part {
 fn edge() -> Edge {
     Edge {
         part: "foot".into(),
-        kind: "edge".into(),
         angle_deg: 90.0,
         exponent: -1.0 / 3.0,
         case: "100 kV peak applied".into(),
         strength: 1.2e5,
-        strength_bar: 2e3,
-        closed: false,
-        length_metre: 0.04,
-        along: vec![EdgePlace {
-            at_metre: [0.02, 0.0, 0.1],
-            strength: 1.2e5,
-            bar: 2e3,
-            field_v_per_m: None,
-            bar_v_per_m: None,
-        }],
-        edge_radius_metre: None,
-        field_v_per_m: None,
-        bar_v_per_m: None,
         from_metre: [0.0, 0.0, 0.1],
         to_metre: [0.04, 0.0, 0.1],
         field_at: vec![FieldAt { distance_metre: 1e-4, field_v_per_m: 2.585e6 }],
@@ -198,9 +176,6 @@ fn maximum(name: &str, field: Option<f64>, at_metre: [f64; 3]) -> Maximum {
         smooth_v_per_m: field.or(Some(0.6794162e6)),
         at_metre,
         curvature_per_metre: Some([20.0, 20.0]),
-        area_above_90_m2: field.map(|_| 2.1e-4),
-        area_above_80_m2: field.map(|_| 5.3e-4),
-        further: field.map(|e| lesser(0.62 * e)).into_iter().collect(),
         limit_v_per_m: limited.then_some(2.6e6),
         limit_is: limited.then(|| "peak".into()),
         margin: field.filter(|_| limited).map(|e| 2.6e6 / e - 1.0),
@@ -213,10 +188,6 @@ fn maximum(name: &str, field: Option<f64>, at_metre: [f64; 3]) -> Maximum {
         }
         .into(),
     }
-}
-
-fn lesser(field_v_per_m: f64) -> FurtherMaximum {
-    FurtherMaximum { field_v_per_m, bar_v_per_m: 0.02 * field_v_per_m, at_metre: [0.0, 0.0, 0.45] }
 }
 
 fn budget_line() -> BudgetLine {

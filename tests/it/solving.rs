@@ -2,20 +2,17 @@
 use crate::reference::TestBody;
 use crate::shapes::Facet;
 use amberskin::adapt;
-use amberskin::adapt::Aim;
 use amberskin::adapt::Demand;
 use amberskin::adapt::Finished;
 use amberskin::adapt::Limits;
-use amberskin::base::Images;
+use amberskin::base::Plane;
 use amberskin::mesh::Assembly;
 use amberskin::mesh::Body;
-use amberskin::mesh::Patches;
+use amberskin::mesh::Surface;
 use amberskin::mesh::accept;
 use amberskin::mesh::assembly;
 use amberskin::mesh::smooth;
-use amberskin::mesh::whole;
 use amberskin::panel;
-use amberskin::physics::capacitance::Matrix;
 use amberskin::physics::solved::Bar;
 use amberskin::physics::solved::Solved;
 use std::sync::Arc;
@@ -43,15 +40,15 @@ fn named(facets: impl IntoIterator<Item = Vec<Facet>>, sheet: bool) -> Vec<TestB
 }
 
 /// Accepted, smoothed and exposed.
-pub(crate) fn assembled(bodies: &[TestBody], bonds: &[Vec<String>], images: impl Into<Images>) -> Assembly {
-    let images = images.into();
+pub(crate) fn assembled(bodies: &[TestBody], bonds: &[Vec<String>], plane: Option<&Plane>) -> Assembly {
     let accepted = |body: &TestBody| {
         let (surface, _) = accept::body(&body.facets, body.sheet, &body.name).unwrap();
-        let (surface, _) = whole::whole(surface, &images, &body.name).unwrap();
-        let (surface, _) = smooth::rebuild(surface, smooth::CREASE_ANGLE);
+        let smooth = smooth::recover(&surface.welded, smooth::CREASE_ANGLE);
+        let surface =
+            Surface { normals: smooth.normals, creases: smooth.creases, rims_as_drawn: false, ..surface };
         Body { name: body.name.clone(), surface }
     };
-    assembly::expose(bodies.iter().map(accepted).collect(), bonds, images).unwrap()
+    assembly::expose(bodies.iter().map(accepted).collect(), bonds, plane).unwrap()
 }
 
 /// What is asked of a solution.
@@ -64,46 +61,15 @@ pub(crate) struct Asked {
 }
 
 /// Refined until what is asked is reached.
-pub(crate) fn refined(assembly: Assembly, images: impl Into<Images>, asked: Asked) -> Finished {
-    let start = adapt::start(FIRST_PANELS, None, panel::build(Arc::new(assembly), images));
+pub(crate) fn refined(assembly: Assembly, plane: Option<Plane>, asked: Asked) -> Finished {
+    let start = adapt::at_least(FIRST_PANELS, panel::build(Arc::new(assembly), plane));
     let limits = Limits { max_panels: Some(asked.max_panels), time: None, memory: 4e9 };
-    adapt::run(start, 1.0, Demand { capacitance: asked.demand, field: None }, &limits, &|_| {}).unwrap()
-}
-
-/// Refined for capacitances as asked and for the maxima in every case of `volts`, row potentials [V].
-pub(crate) fn aimed(
-    assembly: Assembly,
-    images: impl Into<Images>,
-    asked: Asked,
-    volts: &[Vec<f64>],
-    max_field: f64,
-) -> Finished {
-    let start = adapt::start(FIRST_PANELS, None, panel::build(Arc::new(assembly), images));
-    let limits = Limits { max_panels: Some(asked.max_panels), time: None, memory: 4e9 };
-    let potentials = |_: &Matrix| volts.to_vec();
-    let aim = Aim { max_field, potentials: &potentials };
-    adapt::run(start, 1.0, Demand { capacitance: asked.demand, field: Some(aim) }, &limits, &|_| {}).unwrap()
-}
-
-/// The assembly with every facet its own chart, for laws of the operator: they belong to panels that are given,
-/// and how a form is merged into few charts depends on the order of its corners.
-pub(crate) fn as_drawn(mut assembly: Assembly) -> Assembly {
-    for body in &mut assembly.bodies {
-        body.surface.patches = Patches::none(body.surface.welded.facets.len());
-    }
-    assembly
-}
-
-/// As [`solve`], on the facets as drawn.
-pub(crate) fn solve_as_drawn(bodies: &[TestBody], images: impl Into<Images>, asked: Asked) -> Solved {
-    let images = images.into();
-    refined(as_drawn(assembled(bodies, &[], &images)), images, asked).solved
+    adapt::run(start, 1.0, Demand { capacitance: asked.demand }, &limits, &|_| {}).unwrap()
 }
 
 /// Bodies without bonds, refined until what is asked is reached.
-pub(crate) fn solve(bodies: &[TestBody], images: impl Into<Images>, asked: Asked) -> Solved {
-    let images = images.into();
-    refined(assembled(bodies, &[], &images), images, asked).solved
+pub(crate) fn solve(bodies: &[TestBody], plane: Option<Plane>, asked: Asked) -> Solved {
+    refined(assembled(bodies, &[], plane.as_ref()), plane, asked).solved
 }
 
 /// `uᵀ C v` and its bar [F × units of u and v].
@@ -111,4 +77,10 @@ pub(crate) fn combination(solved: &Solved, u: &[f64], v: &[f64]) -> (f64, f64) {
     let c = &solved.matrix;
     let value = u.iter().zip(c).map(|(u, row)| u * row.iter().zip(v).map(|(c, v)| c * v).sum::<f64>()).sum();
     (value, Bar::total(&solved.bar(u, v)))
+}
+
+/// Relative bars of the diagonal, for the bars of maxima [1].
+pub(crate) fn charge_bars(solved: &Solved) -> Vec<f64> {
+    let (bars, _) = solved.bars();
+    (0..solved.n_rows()).map(|i| bars[i][i].total() / solved.matrix[i][i]).collect()
 }

@@ -25,10 +25,8 @@ def measures(path):
 
 def main(kept, fresh):
     kept, fresh = pathlib.Path(kept), pathlib.Path(fresh)
-    again = sorted(str(p.relative_to(fresh)) for p in fresh.rglob("*.stl"))
     names = sorted(str(p.relative_to(kept)) for p in kept.rglob("*.stl"))
-    if not any("occ_" in name for name in again):  # Made only where the kernel is installed (meshes/cad/make.sh).
-        names = [name for name in names if "occ_" not in name]
+    again = sorted(str(p.relative_to(fresh)) for p in fresh.rglob("*.stl"))
     if not names or names != again:
         sys.exit(f"mesh_check: kept {names}, made again {again}")
     for name in names:
@@ -38,7 +36,7 @@ def main(kept, fresh):
         box = max(np.abs(lower2 - lower).max(), np.abs(upper2 - upper).max())
         if n != n2 or not off <= VOLUME_REL_TOL or not box <= VOLUME_REL_TOL * np.abs(upper - lower).max():
             sys.exit(f"mesh_check: {name}: {n} facets, {volume} mm3 kept; {n2}, {volume2} made again; box off {box}")
-    print(f"CAD programs make {len(names)} STL files again: same facets, volumes and boxes")
+    print(f"OpenSCAD makes {len(names)} STL files again: same facets, volumes and boxes")
 
 
 if __name__ == "__main__":
