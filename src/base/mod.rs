@@ -17,6 +17,11 @@ pub use finding::Severity;
 /// A point or a vector in space; lengths in metres once a shape is read.
 pub type Vec3 = nalgebra::Vector3<f64>;
 
+/// `1 round`, `2 rounds`.
+pub fn counted(count: usize, thing: &str) -> String {
+    format!("{count} {thing}{}", if count == 1 { "" } else { "s" })
+}
+
 /// An infinite plane at 0 V, or a mirror: a point of it and its unit normal.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct Plane {

@@ -2,8 +2,6 @@
 
 use crate::base::Finding;
 use crate::cli::failure::Failure;
-use crate::report::digits;
-use crate::report::form::clean;
 use crate::report::lengths;
 use serde_json::Value;
 use serde_json::json;
@@ -67,11 +65,9 @@ pub(super) type LengthUnit<'a> = (&'a str, f64);
 
 /// A finding on one line, its place in `unit`.
 pub(super) fn finding_text(finding: &Finding, (name, metres): LengthUnit<'_>) -> String {
-    let place = finding.place.map(|at| format!(", at {} {name}", digits::place(&[at.x, at.y, at.z], metres)));
-    let text = lengths::in_unit(&clean(&finding.text), name, metres);
-    // Many texts name their place themselves.
-    let place = place.filter(|_| !text.contains(&format!(") {name}")));
-    format!("{}: {text}{}", finding.severity.word(), place.unwrap_or_default())
+    let (text, place) = lengths::told(&finding.text, finding.place.map(Into::into), name, metres);
+    let place = place.map_or_else(String::new, |place| format!(", {place}"));
+    format!("{}: {text}{place}", finding.severity.word())
 }
 
 /// A finding as JSON; its place in metres, or in the unit of the drawing where no case gives one.

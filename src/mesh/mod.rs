@@ -14,7 +14,7 @@ mod flat;
 pub mod holes;
 mod joints;
 mod listing;
-mod nesting;
+pub mod nesting;
 mod orient;
 mod parts;
 pub mod place;

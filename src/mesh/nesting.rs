@@ -19,6 +19,9 @@ use crate::mesh::weld;
 /// do for shells that do not touch; where they touch, single ones may lie on the other shell.
 const VOTES: usize = 5;
 
+/// The same where the shells of a file are parted into bodies [1]: no more than a name hangs on it.
+const FILE_VOTES: usize = 3;
+
 /// Turns each closed shell so that its normals point out of the metal, by nesting parity: a
 /// shell inside an odd number of others bounds a cavity.  Open shells of a sheet stay as they
 /// are.
@@ -69,14 +72,38 @@ pub(in crate::mesh) fn is_closed(shell: &Welded) -> bool {
 
 /// For each shell, the number of others that hold it.
 fn depths(shells: &[Welded], sheet: bool) -> Vec<usize> {
-    let mut depths = vec![0; shells.len()];
     if sheet || shells.len() < 2 {
-        return depths;
+        return vec![0; shells.len()];
     }
+    holders(shells, &vec![true; shells.len()], VOTES).iter().map(Vec::len).collect()
+}
+
+/// The shells of a file by body: each outer shell, then the walls of its cavities.
+///
+/// A shell inside an odd number of others is the wall of a cavity of the innermost of them; inside
+/// an even number it is a body of its own.  Open shells hold nothing and are no walls.
+pub fn with_cavities(shells: &[Welded]) -> Vec<Vec<usize>> {
+    let closed: Vec<bool> = shells.iter().map(is_closed).collect();
+    let holders = holders(shells, &closed, FILE_VOTES);
+    let mut groups: Vec<Vec<usize>> = vec![Vec::new(); shells.len()];
+    for (k, held) in holders.iter().enumerate() {
+        let innermost = held.iter().copied().max_by_key(|outer| holders[*outer].len());
+        match innermost.filter(|_| held.len() % 2 == 1) {
+            Some(outer) if holders[outer].len().is_multiple_of(2) => groups[outer].push(k),
+            _ => groups[k].insert(0, k),
+        }
+    }
+    groups.retain(|group| !group.is_empty());
+    groups
+}
+
+/// For each of the shells that count, the others of them that hold it; nothing holds the rest.
+fn holders(shells: &[Welded], counts: &[bool], votes: usize) -> Vec<Vec<usize>> {
     let boxes: Vec<(Vec3, Vec3)> = shells.iter().map(|s| weld::bounds(&s.points)).collect();
-    let mut by_x: Vec<usize> = (0..shells.len()).collect();
+    let mut by_x: Vec<usize> = (0..shells.len()).filter(|k| counts[*k]).collect();
     by_x.sort_by(|&s, &t| boxes[s].0.x.total_cmp(&boxes[t].0.x));
-    for (outer, shell) in shells.iter().enumerate() {
+    let mut holders = vec![Vec::new(); shells.len()];
+    for &outer in &by_x {
         let (lo, hi) = boxes[outer];
         let first = by_x.partition_point(|&s| boxes[s].0.x < lo.x);
         let mut prepared: Option<Winding> = None;
@@ -85,19 +112,20 @@ fn depths(shells: &[Welded], sheet: bool) -> Vec<usize> {
             if inner == outer || !within {
                 continue;
             }
-            let prepared = prepared.get_or_insert_with(|| winding::prepare(shells::triangles(shell)));
+            let prepared =
+                prepared.get_or_insert_with(|| winding::prepare(shells::triangles(&shells[outer])));
             // Whichever way its normals point.
             let holds = |x: &Vec3| winding::INSIDE <= prepared.at(x).abs();
-            if VOTES < 2 * voters(&shells[inner]).filter(holds).count() {
-                depths[inner] += 1;
+            if votes < 2 * voters(&shells[inner], votes).filter(holds).count() {
+                holders[inner].push(outer);
             }
         }
     }
-    depths
+    holders
 }
 
-/// Centroids of facets spread over a shell, [`VOTES`] of them.
-fn voters(shell: &Welded) -> impl Iterator<Item = Vec3> {
+/// Centroids of `votes` facets spread over a shell.
+fn voters(shell: &Welded, votes: usize) -> impl Iterator<Item = Vec3> {
     let n = shell.facets.len();
-    (0..VOTES).map(move |k| repair::centroid(&shell.points, &shell.facets[k * n / VOTES]))
+    (0..votes).map(move |k| repair::centroid(&shell.points, &shell.facets[k * n / votes]))
 }

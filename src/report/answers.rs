@@ -1,5 +1,6 @@
 //! The answer sheet: what `solve` prints and `answers.txt` holds.
 
+use crate::base::counted;
 use crate::record::BudgetLine;
 use crate::record::Look;
 use crate::record::Record;
@@ -146,14 +147,11 @@ fn findings_text(record: &Record, printing: &Printing) -> String {
                 continue;
             }
         }
-        let place = finding.where_metre.map_or(String::new(), |at| {
-            format!(" at {} {}", digits::place(&at, printing.length), printing.length_name)
-        });
         let (severity, code) = (clean(&finding.severity), clean(&finding.code));
-        let sentence = lengths::in_unit(&clean(&finding.text), &printing.length_name, printing.length);
-        // Many sentences name their place themselves.
-        let named = sentence.contains(&format!(") {}", printing.length_name));
-        text += &format!("  {severity} {code}: {sentence}{}\n", if named { "" } else { place.as_str() });
+        let unit = (&printing.length_name, printing.length);
+        let (sentence, place) = lengths::told(&finding.text, finding.where_metre, unit.0, unit.1);
+        let place = place.map_or_else(String::new, |place| format!(" {place}"));
+        text += &format!("  {severity} {code}: {sentence}{place}\n");
     }
     for (part, count) in slivers.iter().filter(|(_, count)| SLIVERS < **count) {
         text += &format!(
@@ -206,11 +204,6 @@ fn budget_text(entries: &[BudgetLine]) -> String {
     ];
     text += &tables::grid(&names, &columns);
     text + "\n"
-}
-
-/// `1 round`, `2 rounds`.
-fn counted(count: usize, thing: &str) -> String {
-    format!("{count} {thing}{}", if count == 1 { "" } else { "s" })
 }
 
 fn effort_text(record: &Record) -> String {

@@ -1,6 +1,7 @@
 //! Sentences of findings with their lengths in the unit of the drawing.
 
 use crate::report::digits;
+use crate::report::form::clean;
 
 /// Significant digits of a length inside a sentence [1].
 const DIGITS: usize = 5;
@@ -20,6 +21,14 @@ pub fn in_unit(text: &str, name: &str, metres: f64) -> String {
         _ => piece.to_owned(),
     });
     shown.collect::<Vec<String>>().join("`")
+}
+
+/// The sentence of a finding in a unit of `metres` [m], and its place there; no place where the sentence
+/// names one itself, as many do.
+pub fn told(text: &str, place: Option<[f64; 3]>, name: &str, metres: f64) -> (String, Option<String>) {
+    let text = in_unit(&clean(text), name, metres);
+    let place = place.filter(|_| !text.contains(&format!(") {name}")));
+    (text, place.map(|at| format!("at {} {name}", digits::place(&at, metres))))
 }
 
 fn sentence(text: &str, name: &str, metres: f64) -> String {

@@ -3,6 +3,7 @@
 use crate::base::Finding;
 use crate::base::Severity;
 use crate::base::Vec3;
+use crate::base::counted;
 use crate::case::Case;
 use crate::case::Electrode;
 use crate::case::Shapes;
@@ -122,9 +123,8 @@ fn select(
     let index = match shell {
         Shell::Index(k) if *k < found.len() => Ok(*k),
         Shell::Index(k) => Err(format!(
-            "`{name}`: shell {k} is asked for, but the file has {} shell{}; an index from 0 to {} is wanted",
-            found.len(),
-            if found.len() == 1 { "" } else { "s" },
+            "`{name}`: shell {k} is asked for, but the file has {}; an index from 0 to {} is wanted",
+            counted(found.len(), "shell"),
             found.len().saturating_sub(1)
         )),
         Shell::Holding(x) => shells::holding(&found, &(x / unit)).ok_or_else(|| {

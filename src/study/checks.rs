@@ -3,6 +3,7 @@
 use crate::base::Vec3;
 use crate::geom::Triangle;
 use crate::kernel::rules;
+use crate::mesh::shells;
 use crate::mesh::weld;
 use crate::physics;
 use crate::physics::solved::Solved;
@@ -142,12 +143,7 @@ fn volume_checks(solved: &Solved, earth_bars: &[f64]) -> Vec<Check> {
     let total: f64 = solved.matrix.iter().flatten().sum();
     let bar: f64 = earth_bars.iter().sum::<f64>() / total;
     let volume = |body: &crate::mesh::Body| {
-        let welded = &body.surface.welded;
-        let part = |f: &[u32; 3]| {
-            let [a, b, c] = f.map(|k| welded.points[k as usize] - welded.points[0]);
-            a.dot(&b.cross(&c)) / 6.0
-        };
-        if body.surface.sheet { 0.0 } else { welded.facets.iter().map(part).sum::<f64>() }
+        if body.surface.sheet { 0.0 } else { shells::volume(&body.surface.welded) }
     };
     let in_row = |k: usize| panels.assembly.rows.iter().any(|row| row.bodies.contains(&(k as u32)));
     let bodies = panels.assembly.bodies.iter().enumerate().filter(|(k, _)| in_row(*k));

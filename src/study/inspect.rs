@@ -10,13 +10,12 @@ use crate::base::Vec3;
 use crate::case::Case;
 use crate::case::Shapes;
 use crate::geom::Triangle;
-use crate::geom::winding;
-use crate::geom::winding::Winding;
 use crate::mesh::Body;
 use crate::mesh::Welded;
 use crate::mesh::accept;
 use crate::mesh::assembly;
 use crate::mesh::edges;
+use crate::mesh::nesting;
 use crate::mesh::shells;
 use crate::mesh::smooth;
 use crate::mesh::weld;
@@ -87,7 +86,7 @@ pub fn inspect_files(shapes: &Shapes) -> Inspection {
     for (file, read) in shapes.files.iter().zip(read) {
         inspection.findings.extend(read.findings);
         let parts = shells::split(&weld::weld(&read.solids.concat(), weld::WELD_REL_TOL));
-        let groups = with_cavities(&parts);
+        let groups = nesting::with_cavities(&parts);
         let many = 1 < groups.len();
         for group in groups {
             let name = if many { format!("{} shell {}", file.path, group[0]) } else { file.path.clone() };
@@ -97,58 +96,6 @@ pub fn inspect_files(shapes: &Shapes) -> Inspection {
     }
     inspection.findings.retain(|finding| finding.code != "unit_suspicion");
     inspection
-}
-
-/// Facets of a shell whose centroids vote on whether it lies in another one [1]; odd.
-const VOTES: usize = 3;
-
-/// The shells of a file by body: each outer shell, then the walls of its cavities.
-///
-/// A shell inside an odd number of others is the wall of a cavity of the innermost of them; inside
-/// an even number it is a body of its own.  Open shells hold nothing and are no walls.
-fn with_cavities(parts: &[Welded]) -> Vec<Vec<usize>> {
-    let holders = holders(parts);
-    let mut groups: Vec<Vec<usize>> = vec![Vec::new(); parts.len()];
-    for (k, held) in holders.iter().enumerate() {
-        let innermost = held.iter().copied().max_by_key(|outer| holders[*outer].len());
-        match innermost.filter(|_| held.len() % 2 == 1) {
-            Some(outer) if holders[outer].len().is_multiple_of(2) => groups[outer].push(k),
-            _ => groups[k].insert(0, k),
-        }
-    }
-    groups.retain(|group| !group.is_empty());
-    groups
-}
-
-/// For each shell, the closed ones that hold it.
-fn holders(parts: &[Welded]) -> Vec<Vec<usize>> {
-    let boxes: Vec<(Vec3, Vec3)> = parts.iter().map(|part| weld::bounds(&part.points)).collect();
-    let closed: Vec<bool> =
-        parts.iter().map(|part| edges::open_sides(&edges::sides(&part.facets)).is_empty()).collect();
-    let mut by_x: Vec<usize> = (0..parts.len()).filter(|k| closed[*k]).collect();
-    by_x.sort_by(|&s, &t| boxes[s].0.x.total_cmp(&boxes[t].0.x));
-    let mut holders = vec![Vec::new(); parts.len()];
-    for &outer in &by_x {
-        let (lo, hi) = boxes[outer];
-        let first = by_x.partition_point(|&s| boxes[s].0.x < lo.x);
-        let within = |inner: usize| {
-            inner != outer && (0..3).all(|k| lo[k] <= boxes[inner].0[k] && boxes[inner].1[k] <= hi[k])
-        };
-        let mut prepared: Option<Winding> = None;
-        for &inner in by_x[first..].iter().take_while(|&&s| boxes[s].0.x <= hi.x).filter(|s| within(**s)) {
-            let prepared = prepared.get_or_insert_with(|| winding::prepare(shells::triangles(&parts[outer])));
-            let (facets, points) = (&parts[inner].facets, &parts[inner].points);
-            let middle = |vote: usize| {
-                facets[vote * facets.len() / VOTES].iter().map(|p| points[*p as usize] / 3.0).sum::<Vec3>()
-            };
-            // Whichever way the normals of the outer shell point.
-            let inside = (0..VOTES).filter(|v| winding::INSIDE <= prepared.at(&middle(*v)).abs()).count();
-            if VOTES < 2 * inside {
-                holders[inner].push(outer);
-            }
-        }
-    }
-    holders
 }
 
 fn inspect_shell(name: &str, part: &Welded, inspection: &mut Inspection) {

@@ -16,6 +16,7 @@ mod voltage;
 
 use crate::base::Finding;
 use crate::base::Severity;
+use crate::base::counted;
 use crate::record::Record;
 use crate::record::SurfaceTable;
 
@@ -109,6 +110,5 @@ pub enum StudyError {
 
 /// `1 problem`, `3 problems`: the refusals among the findings.
 fn problems(findings: &[Finding]) -> String {
-    let count = findings.iter().filter(|finding| finding.severity == Severity::Refusal).count();
-    format!("{count} problem{}", if count == 1 { "" } else { "s" })
+    counted(findings.iter().filter(|finding| finding.severity == Severity::Refusal).count(), "problem")
 }

@@ -5,9 +5,12 @@ use super::StudyError;
 use super::checks;
 use super::state::States;
 use super::voltage;
+use crate::adapt;
 use crate::adapt::Finished;
 use crate::adapt::Stop;
 use crate::base::Finding;
+use crate::base::Severity;
+use crate::base::Vec3;
 use crate::base::threads;
 use crate::case;
 use crate::case::Case;
@@ -172,45 +175,36 @@ const UNRESOLVED: f64 = 10.0;
 fn solved_findings(case: &Case, solved: &Solved) -> Vec<Finding> {
     let panels = &solved.panels;
     let mut found = Vec::new();
-    let share = |p: usize| panels.offset[p].abs() / solved.gaps[p].max(f64::MIN_POSITIVE);
-    let worst = (0..panels.len()).max_by(|a, b| share(*a).total_cmp(&share(*b)));
-    if let Some(p) = worst.filter(|p| COARSE_FOR_GAP < share(*p)) {
-        let name = &panels.assembly.bodies[panels.body[p] as usize].name;
-        found.push(Finding {
-            severity: crate::base::Severity::Warning,
-            code: "facets_coarse_for_gap",
-            text: format!(
-                "`{name}`: the round shape stands {:.3} % of the gap away from its facets; draw it finer there",
-                100.0 * share(p)
-            ),
-            place: Some(panels.triangles[p].centroid()),
-        });
+    let mut warn = |code: &'static str, text: String, place: Option<Vec3>| {
+        found.push(Finding { severity: Severity::Warning, code, text, place });
+    };
+    // The panel at which `ratio` is largest, if it is over `least`: the name of its body, value and place.
+    let over = |least: f64, ratio: &dyn Fn(usize) -> f64| {
+        let worst = (0..panels.len()).max_by(|a, b| ratio(*a).total_cmp(&ratio(*b)))?;
+        let name = &panels.assembly.bodies[panels.body[worst] as usize].name;
+        (least < ratio(worst)).then(|| (name, ratio(worst), panels.triangles[worst].centroid()))
+    };
+    let gap = |p: usize| solved.gaps[p].max(f64::MIN_POSITIVE);
+    if let Some((name, share, place)) = over(COARSE_FOR_GAP, &|p| panels.offset[p].abs() / gap(p)) {
+        let share = 100.0 * share;
+        let text = format!(
+            "`{name}`: the round shape stands {share:.3} % of the gap away from its facets; draw it finer there"
+        );
+        warn("facets_coarse_for_gap", text, Some(place));
     }
-    let ratio = |p: usize| panels.triangles[p].longest_edge() / solved.gaps[p].max(f64::MIN_POSITIVE);
-    let widest = (0..panels.len()).max_by(|a, b| ratio(*a).total_cmp(&ratio(*b)));
-    if let Some(p) = widest.filter(|p| UNRESOLVED < ratio(*p)) {
-        let name = &panels.assembly.bodies[panels.body[p] as usize].name;
-        found.push(Finding {
-            severity: crate::base::Severity::Warning,
-            code: "gap_not_resolved",
-            text: format!(
-                "`{name}`: panels {:.0} times as long as the gap beside them; bars can be too small there: ask for a \
-                 tighter capacitance until this is gone or the values stand still",
-                ratio(p)
-            ),
-            place: Some(panels.triangles[p].centroid()),
-        });
+    if let Some((name, ratio, place)) = over(UNRESOLVED, &|p| panels.triangles[p].longest_edge() / gap(p)) {
+        let text = format!(
+            "`{name}`: panels {ratio:.0} times as long as the gap beside them; bars can be too small there: ask for a \
+             tighter capacitance until this is gone or the values stand still"
+        );
+        warn("gap_not_resolved", text, Some(place));
     }
     if let Some(most) = case.accuracy.max_panels.filter(|most| *most < panels.len()) {
-        found.push(Finding {
-            severity: crate::base::Severity::Warning,
-            code: "max_panels_exceeded",
-            text: format!(
-                "`max_panels` is {most}, but the shapes as drawn need {} panels from the first round on",
-                panels.len()
-            ),
-            place: None,
-        });
+        let text = format!(
+            "`max_panels` is {most}, but the shapes as drawn need {} panels from the first round on",
+            panels.len()
+        );
+        warn("max_panels_exceeded", text, None);
     }
     found
 }
@@ -263,7 +257,7 @@ fn budget(solved: &Solved, bars: &[Vec<Bar>], earth_bars: &[Bar], earth: &[f64])
     for i in 0..n {
         for j in i + 1..n {
             let c = -solved.matrix[i][j];
-            if crate::adapt::over_floor(&solved.matrix, i, Some(j)) {
+            if adapt::over_floor(&solved.matrix, i, Some(j)) {
                 let mut entry =
                     line(format!("c {} {}", names[i], names[j]), c, &bars[i][j], &unit(i), &unit(j));
                 entry.faceting = -entry.faceting;
@@ -271,7 +265,7 @@ fn budget(solved: &Solved, bars: &[Vec<Bar>], earth_bars: &[Bar], earth: &[f64])
             }
         }
     }
-    for i in (0..n).filter(|i| 1 < n && crate::adapt::over_floor(&solved.matrix, *i, None)) {
+    for i in (0..n).filter(|i| 1 < n && adapt::over_floor(&solved.matrix, *i, None)) {
         entries.push(line(format!("c {} earth", names[i]), earth[i], &earth_bars[i], &unit(i), &ones));
     }
     Budget { entries }
@@ -352,8 +346,7 @@ fn verdict(
 fn worst_entry(solved: &Solved) -> String {
     let (bars, earth) = solved.bars();
     let name = |i: usize| solved.panels.assembly.rows[i].name.as_str();
-    let share =
-        |bar: &Bar, i: usize, j: Option<usize>| bar.total() / crate::adapt::scale(&solved.matrix, i, j);
+    let share = |bar: &Bar, i: usize, j: Option<usize>| bar.total() / adapt::scale(&solved.matrix, i, j);
     let n = solved.n_rows();
     let pairs = (0..n).flat_map(|i| (i..n).map(move |j| (i, Some(j))));
     let all = pairs.chain((0..n).map(|i| (i, None)));

@@ -13,6 +13,17 @@ name = "ball"
 shape = "ball.stl"
 "#;
 
+/// A ball without facets: refused, but only once it is read.
+const EMPTY: &str = "solid x\nendsolid x\n";
+
+/// A folder with `case.toml` and the ball of it.
+fn laid_out(case: &str, ball: &str) -> tempfile::TempDir {
+    let dir = tempfile::tempdir().unwrap();
+    fs::write(dir.path().join("case.toml"), case).unwrap();
+    fs::write(dir.path().join("ball.stl"), ball).unwrap();
+    dir
+}
+
 /// A record of one sphere of radius 1 m: 4πε₀ · 1 m, CODATA 2022.
 const RECORD: &str = r#"{
   "schema": 1,
@@ -135,9 +146,7 @@ fn case_and_stl_files_do_not_mix() {
 
 #[test]
 fn a_record_of_another_case_stays_unless_told_otherwise() {
-    let dir = tempfile::tempdir().unwrap();
-    fs::write(dir.path().join("case.toml"), CASE).unwrap();
-    fs::write(dir.path().join("ball.stl"), "solid x\nendsolid x\n").unwrap();
+    let dir = laid_out(CASE, EMPTY);
     let folder = dir.path().join("out/case");
     fs::create_dir_all(&folder).unwrap();
     for (text, words) in [(RECORD, "another case"), ("mine", "no record of this program")] {
@@ -153,10 +162,8 @@ fn a_record_of_another_case_stays_unless_told_otherwise() {
 
 #[test]
 fn a_file_that_is_no_earlier_result_stays_unless_told_otherwise() {
-    let dir = tempfile::tempdir().unwrap();
     let case = CASE.to_owned() + "[deliver]\nanswers = \"a.txt\"\nmatrix = \"m.csv\"\nnetlist = \"n.cir\"\n";
-    fs::write(dir.path().join("case.toml"), case).unwrap();
-    fs::write(dir.path().join("ball.stl"), "solid x\nendsolid x\n").unwrap();
+    let dir = laid_out(&case, EMPTY);
     let folder = dir.path().join("out/case");
     fs::create_dir_all(&folder).unwrap();
     for name in ["surface.vtu", "a.txt", "m.csv", "m_long.csv", "n.cir"] {
@@ -174,10 +181,8 @@ fn a_file_that_is_no_earlier_result_stays_unless_told_otherwise() {
 
 #[test]
 fn a_shape_is_never_written_over() {
-    let dir = tempfile::tempdir().unwrap();
     let case = CASE.to_owned() + "[deliver]\nfolder = \".\"\nanswers = \"ball.stl\"\n";
-    fs::write(dir.path().join("case.toml"), case).unwrap();
-    fs::write(dir.path().join("ball.stl"), "solid x\nendsolid x\n").unwrap();
+    let dir = laid_out(&case, EMPTY);
     let (code, _, err) = told(run(dir.path(), &["solve", "case.toml", "--overwrite"]));
     assert_eq!(code, 1, "{err}");
     assert!(err.contains("ball.stl: read by this case"), "{err}");
@@ -185,15 +190,13 @@ fn a_shape_is_never_written_over() {
 
 #[test]
 fn refusals_alone_are_counted_as_problems() {
-    let dir = tempfile::tempdir().unwrap();
-    fs::write(dir.path().join("case.toml"), CASE).unwrap();
     // A tetrahedron without its last facet, and a facet given twice: one refusal, one repair told.
     let corners = ["0 0 0", "10 0 0", "0 10 0", "0 0 10"];
     let facets = [[0, 2, 1], [0, 1, 3], [0, 3, 2], [0, 3, 2]].map(|facet| {
         let lines = facet.map(|k| format!("vertex {}\n", corners[k])).concat();
         format!("facet normal 0 0 0\nouter loop\n{lines}endloop\nendfacet\n")
     });
-    fs::write(dir.path().join("ball.stl"), format!("solid x\n{}endsolid x\n", facets.concat())).unwrap();
+    let dir = laid_out(CASE, &format!("solid x\n{}endsolid x\n", facets.concat()));
     let (code, _, err) = told(run(dir.path(), &["solve", "case.toml"]));
     assert_eq!(code, 2, "{err}");
     assert!(err.contains("note: ") && err.contains("geometry refused: 1 problem\n"), "{err}");
